@@ -1,0 +1,11 @@
+//! ebbmark turns a phone clip of a free oscillation into a number that its user can defend.
+pub mod footage;
+pub mod measurement;
+pub mod motion;
+pub mod record;
+pub mod rehearsal;
+#[cfg(doc)]
+pub mod sources;
+pub mod stats;
+pub mod uncertainty;
+pub mod verdict;

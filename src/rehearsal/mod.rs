@@ -1,0 +1,1 @@
+//! Films with known truth.
