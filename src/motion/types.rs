@@ -1,4 +1,5 @@
 // Interface sketch: the room's author moves each type into the file it belongs to.
+use super::PositionUse;
 use crate::uncertainty::{BudgetRow, Quantity};
 
 /// The damped sinusoid x(t) = A e^(−γτ) cos(ωτ + φ) + c, τ = t − `t_ref_s`, fitted to a record.
