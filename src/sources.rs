@@ -1,6 +1,5 @@
 //! The literature, once. Seen by rustdoc only: docstrings link to the items, and an entry says where it was not checked against the printed work ("from memory").
 
-
 /// J. P. Lewis, "Fast template matching", *Vision Interface* 1995, pp. 120–123. From memory.
 #[derive(Debug)]
 pub struct Lewis95;

@@ -21,7 +21,12 @@ impl Quantity {
     #[must_use]
     pub fn symmetric(value: f64, u: f64, coverage_factor: f64, unit: &'static str) -> Self {
         let half = coverage_factor * u;
-        Self { value: Some(value), u: Some(u), unit, interval95: [Some(value - half), Some(value + half)] }
+        Self {
+            value: Some(value),
+            u: Some(u),
+            unit,
+            interval95: [Some(value - half), Some(value + half)],
+        }
     }
 }
 
@@ -60,7 +65,14 @@ pub struct BudgetRow {
 impl BudgetRow {
     /// A row whose contribution is |sensitivity| · u.
     #[must_use]
-    pub fn new(quantity: &'static str, source: impl Into<String>, evaluation: Evaluation, u: f64, unit: &'static str, sensitivity: f64) -> Self {
+    pub fn new(
+        quantity: &'static str,
+        source: impl Into<String>,
+        evaluation: Evaluation,
+        u: f64,
+        unit: &'static str,
+        sensitivity: f64,
+    ) -> Self {
         Self {
             quantity,
             source: source.into(),
@@ -92,7 +104,10 @@ impl BudgetRow {
 /// Root sum of squares of the contributions: the combined standard uncertainty of independent inputs (GUM 5.1.2).
 #[must_use]
 pub fn combined(rows: &[BudgetRow]) -> f64 {
-    rows.iter().map(|row| row.contribution * row.contribution).sum::<f64>().sqrt()
+    rows.iter()
+        .map(|row| row.contribution * row.contribution)
+        .sum::<f64>()
+        .sqrt()
 }
 
 /// Effective degrees of freedom of a combined uncertainty by Welch and Satterthwaite (GUM G.4.1); `None` for infinitely many.
@@ -100,6 +115,12 @@ pub fn combined(rows: &[BudgetRow]) -> f64 {
 /// ν_eff = u_c⁴ / Σ (contribution⁴ / ν), over the rows whose ν is finite.
 #[must_use]
 pub fn effective_degrees_of_freedom(rows: &[BudgetRow]) -> Option<f64> {
-    let sum: f64 = rows.iter().filter_map(|row| row.degrees_of_freedom.map(|nu| row.contribution.powi(4) / nu)).sum();
+    let sum: f64 = rows
+        .iter()
+        .filter_map(|row| {
+            row.degrees_of_freedom
+                .map(|nu| row.contribution.powi(4) / nu)
+        })
+        .sum();
     (sum > 0.0).then(|| combined(rows).powi(4) / sum)
 }

@@ -1,3 +1,23 @@
 //! Footage: a file becomes frames with true times.
+//!
+//! In: a path. Out: [`Frame`]s in presentation order, each a view of the decoder's own luma, the [`StreamFacts`], and
+//! from all stamps together the [`FrameClock`] with a time for every frame.
+
+mod capture_rate;
+mod decode;
+mod error;
 mod facts;
-pub use facts::*;
+mod frame_clock;
+mod luma;
+mod open;
+mod orientation;
+mod raw;
+
+pub use capture_rate::{CaptureRate, capture_rate_from_metadata, time_scale};
+pub use decode::{Footage, Frame, FrameSource, PictureKind};
+pub use error::FootageError;
+pub use facts::{ClipFacts, StreamFacts};
+pub use frame_clock::{FrameClock, FrameTimes, frame_clock};
+pub use luma::{GreyPicture, LumaCopy, LumaView};
+pub use open::Limits;
+pub use orientation::Orientation;

@@ -42,7 +42,10 @@ impl MotionFit {
     #[must_use]
     pub fn position_m(&self, t_s: f64) -> f64 {
         let tau = t_s - self.t_ref_s;
-        self.centre_m + self.amplitude_m * (-self.decay_rate_per_s * tau).exp() * (self.damped_angular_frequency_rad_per_s * tau + self.phase_rad).cos()
+        self.centre_m
+            + self.amplitude_m
+                * (-self.decay_rate_per_s * tau).exp()
+                * (self.damped_angular_frequency_rad_per_s * tau + self.phase_rad).cos()
     }
     /// Fitted amplitude A e^(−γτ) at a time, in m.
     #[must_use]
