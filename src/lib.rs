@@ -7,5 +7,6 @@ pub mod rehearsal;
 #[cfg(doc)]
 pub mod sources;
 pub mod stats;
+pub mod track;
 pub mod uncertainty;
 pub mod verdict;

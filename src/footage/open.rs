@@ -106,11 +106,11 @@ fn open_decoder(
         codec: codec_name.clone(),
         reason,
     };
-    if decoder::find(parameters.id()).is_none() {
+    let Some(found) = decoder::find(parameters.id()) else {
         return Err(refused(
             "no decoder is built into the system's FFmpeg".to_owned(),
         ));
-    }
+    };
     let mut context = codec::context::Context::from_parameters(parameters)
         .map_err(|error| refused(error.to_string()))?
         .decoder();
@@ -123,7 +123,7 @@ fn open_decoder(
     let mut options = Dictionary::new();
     options.set("max_pixels", &limits.max_picture_px.to_string());
     let decoder = context
-        .open_with(options)
+        .open_as_with(found, options)
         .and_then(decoder::Opened::video)
         .map_err(|error| refused(error.to_string()))?;
     let (width, height) = (decoder.width(), decoder.height());
