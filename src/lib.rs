@@ -4,6 +4,8 @@ pub mod footage;
 pub mod motion;
 //pub mod record;
 pub mod rehearsal;
+pub mod run_sheet;
+pub mod scale;
 #[cfg(doc)]
 pub mod sources;
 pub mod stats;

@@ -8,6 +8,7 @@ mod decode;
 mod error;
 mod facts;
 mod frame_clock;
+mod grid;
 mod luma;
 mod open;
 mod orientation;

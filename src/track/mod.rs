@@ -15,6 +15,7 @@ mod search;
 mod sighting;
 mod streak_line;
 mod template;
+mod texture;
 mod walk;
 
 pub use correlate::{Scores, correlate};
