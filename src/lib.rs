@@ -1,6 +1,6 @@
 //! ebbmark turns a phone clip of a free oscillation into a number that its user can defend.
 pub mod footage;
-//pub mod measurement;
+pub mod measurement;
 pub mod motion;
 //pub mod record;
 pub mod rehearsal;

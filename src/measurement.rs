@@ -1,173 +1,177 @@
-//! The pipeline, and everything one measurement knows.
-use crate::footage::{ClipFacts, FrameClock};
-use crate::motion::{Cycle, MotionFit, MotionQuantities};
-use crate::verdict::Verdict;
+//! The pipeline: it reads as a table of contents.
+//!
+//! In: a run sheet and the folder its paths start from. Out: a [`Measurement`], plain data that the record room writes down.
 
-/// What a row of `positions.csv` says of its frame.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum RowStatus {
-    /// The fit rests on it.
-    Used,
-    /// The marker was not found.
-    Lost,
-    /// Found, but so far off the motion that it was left out.
-    Outlier,
-    /// Found, but before `--from` or after `--to`.
-    Outside,
+mod energy;
+mod error;
+mod film;
+mod parts;
+mod still;
+mod table;
+mod warnings;
+
+pub use error::{Fault, MeasureError};
+pub use parts::{
+    EnergyFigures, FilmPart, Measurement, RecordRow, RowStatus, ScaleFacts, Still, Streak, Warning,
+};
+
+use crate::footage::{Footage, Limits};
+use crate::motion::{self, ExternalTerms, PositionRecord, PositionUse};
+use crate::run_sheet::{FitRun, RunSheet};
+use crate::scale::ScaleBar;
+use crate::uncertainty::Quantity;
+use crate::{track, verdict};
+use std::path::Path;
+
+/// Measures a film.
+///
+/// * `clip`: the film; `sheet`: what to look for in it. `progress` is told how many frames are done, of how many if known.
+///
+/// # Errors
+/// [`MeasureError`]: what is wrong, where, and what to do; [`MeasureError::fault`] says who can mend it.
+pub fn measure(
+    clip: &Path,
+    sheet: &RunSheet,
+    progress: &mut dyn FnMut(usize, Option<usize>),
+) -> Result<Measurement, MeasureError> {
+    let run = sheet.film_run()?;
+    let bar = ScaleBar::new(run.bar_px, run.length_m, run.u_length_m, run.u_end_px)?;
+    let mut footage = Footage::open(clip, Limits::default())?;
+    let plan = film::plan(&run, footage.facts())?;
+    let n_promised = footage.facts().n_frames_promised;
+    let (walked, sha256) = std::thread::scope(|scope| {
+        let sum = scope.spawn(|| film::sha256(clip));
+        let walked = track::walk(&mut footage, &plan, &mut |n| progress(n, n_promised));
+        (walked, sum.join())
+    });
+    let track = walked?;
+    let facts = film::clip_facts(&footage, clip, &track, sha256)?;
+    let film = film::Film::new(&run, bar, footage.facts(), track, clip)?;
+    let mut rows = film.rows(&run)?;
+    let part = fit_rows(&mut rows, &run.fit, Some(film.u_scale_rel()))?;
+    let film_part = film.into_part(facts, &run, &rows);
+    Ok(part.into_measurement(
+        sheet.with_source(&film_part.clip.file_name),
+        Some(film_part),
+        rows,
+    ))
 }
 
-/// One row of the position–time record.
-#[derive(Clone, Debug, PartialEq)]
-pub struct RecordRow {
-    /// Frame number in presentation order, from 0; the row's number for a table.
-    pub frame: usize,
-    /// Time, s.
-    pub t_s: f64,
-    /// Standard uncertainty of the time, s.
-    pub u_t_s: f64,
-    /// Position along the axis, m; None where the marker was lost.
-    pub x_m: Option<f64>,
-    /// Standard uncertainty of `x_m`, m.
-    pub u_x_m: Option<f64>,
-    /// Distance from the axis, m; None where lost or not known (a table).
-    pub off_axis_m: Option<f64>,
-    /// Marker centre in display pixels.
-    pub p_px: Option<[f64; 2]>,
-    /// Normalised correlation of the match, −1…1.
-    pub match_score: Option<f64>,
-    /// What became of it.
-    pub status: RowStatus,
-    /// Fitted position, m; None outside the fit's range or where lost.
-    pub fit_m: Option<f64>,
-    /// Observed minus fitted, m.
-    pub residual_m: Option<f64>,
+/// The same fit and verdicts from a table of positions and times, whoever made it.
+///
+/// * `table`: CSV with a header that names at least `t_s` and `x_m`; `u_t_s`, `u_x_m` and `status` are used where they stand.
+///   Rows without a position are lost, rows with status `outside` stay out.
+///
+/// # Errors
+/// [`MeasureError`], as for [`measure`]; [`MeasureError::Table`] names the row.
+pub fn refit(table: &Path, sheet: &RunSheet) -> Result<Measurement, MeasureError> {
+    let run = sheet.fit_run()?;
+    let (mut rows, file_name, sha256) = table::read(table)?;
+    film::mark_outside(&mut rows, &run)?;
+    let part = fit_rows(&mut rows, &run, None)?;
+    let mut measurement = part.into_measurement(sheet.with_table(&file_name), None, rows);
+    measurement.source_sha256 = sha256;
+    Ok(measurement)
 }
 
-/// Length of a pixel along the motion, and the axis.
-#[derive(Clone, Debug, PartialEq)]
-pub struct ScaleAxis {
-    /// Bar's ends, display px.
-    pub bar_px: [[f64; 2]; 2],
-    /// Bar's length, m, and its standard uncertainty.
-    pub length_m: f64,
-    /// Standard uncertainty of the length, m.
-    pub u_length_m: f64,
-    /// Standard uncertainty of each end along the bar, px.
-    pub u_end_px: f64,
-    /// Scale, m per display px.
-    pub m_per_px: f64,
-    /// Relative standard uncertainty of the scale.
-    pub u_scale_rel: f64,
-    /// True where `u_length_m` or `u_end_px` is our default.
-    pub assumed: bool,
-    /// Point of the axis where x = 0 (mean marker position), display px.
-    pub origin_px: [f64; 2],
-    /// Unit vector of the axis, display px; x grows along it (image right, or down for an upright axis).
-    pub direction: [f64; 2],
-    /// RMS distance of the marker from the axis, m.
-    pub off_axis_rms_m: f64,
-    /// Angle between bar and axis, rad.
-    pub bar_angle_rad: f64,
+/// What fitting gives, film or table.
+struct FittedPart {
+    fit: motion::MotionFit,
+    quantities: motion::MotionQuantities,
+    cycles: Vec<motion::Cycle>,
+    energy: Option<EnergyFigures>,
+    verdicts: Vec<verdict::Verdict>,
+    run: FitRun,
 }
 
-/// What the streak picture is made of: one line of luma a frame, taken along the motion axis.
-#[derive(Clone, Debug, PartialEq)]
-pub struct Streak {
-    /// Samples a line, the same for every frame.
-    pub width: usize,
-    /// Luma 0…255, `width` samples a frame, frame after frame in order of time.
-    pub lines: Vec<u8>,
-    /// Time of each line, s.
-    pub t_s: Vec<f64>,
-    /// Position of sample 0 along the axis, display px from the axis origin.
-    pub first_px: f64,
-    /// Distance of neighbouring samples, display px.
-    pub step_px: f64,
+/// Fits the rows that take part, and writes fit, residual and status back into them.
+fn fit_rows(
+    rows: &mut [RecordRow],
+    run: &FitRun,
+    u_scale_rel: Option<(f64, bool)>,
+) -> Result<FittedPart, MeasureError> {
+    let taking_part: Vec<usize> = (0..rows.len())
+        .filter(|&at| rows[at].status == RowStatus::Used)
+        .collect();
+    let records: Vec<PositionRecord> = taking_part
+        .iter()
+        .filter_map(|&at| record(&rows[at]))
+        .collect();
+    let fit = motion::fit(&records)?;
+    for (at, &row) in taking_part.iter().enumerate() {
+        let row = &mut rows[row];
+        row.fit_m = Some(fit.fit_m[at]);
+        row.residual_m = Some(fit.residual_m[at]);
+        if fit.uses[at] == PositionUse::Outlier {
+            row.status = RowStatus::Outlier;
+        }
+    }
+    let external = ExternalTerms {
+        u_clock_rel: run.clock.u_rel(),
+        clock_assumed: run.clock.assumed,
+        u_scale_rel: u_scale_rel.map(|(u_rel, _)| u_rel),
+        scale_assumed: u_scale_rel.is_some_and(|(_, assumed)| assumed),
+    };
+    let quantities = motion::quantities(&fit, &external);
+    let cycles = motion::cycles(&records, &fit);
+    let verdicts = verdict::verdicts(&fit, &quantities);
+    let energy = energy::figures(&quantities, run);
+    Ok(FittedPart {
+        fit,
+        quantities,
+        cycles,
+        energy,
+        verdicts,
+        run: run.clone(),
+    })
 }
 
-/// A picture in grey, as displayed (turned upright, square pixels).
-#[derive(Clone, Debug, PartialEq)]
-pub struct Still {
-    /// Width, px.
-    pub width: usize,
-    /// Height, px.
-    pub height: usize,
-    /// Luma 0…255, row by row.
-    pub luma: Vec<u8>,
-    /// Display px per pixel of this picture (1, or more where it was made smaller).
-    pub display_px_per_px: f64,
+/// The row as the fit takes it; None where it has no position.
+fn record(row: &RecordRow) -> Option<PositionRecord> {
+    Some(PositionRecord {
+        t_s: row.t_s,
+        u_t_s: row.u_t_s,
+        x_m: row.x_m?,
+        u_x_m: row.u_x_m.unwrap_or(1.0),
+    })
 }
 
-/// What only a film has.
-#[derive(Clone, Debug, PartialEq)]
-pub struct FilmPart {
-    /// Facts of the stream.
-    pub clip: ClipFacts,
-    /// The frame clock.
-    pub frame_clock: FrameClock,
-    /// Scale and axis.
-    pub scale: ScaleAxis,
-    /// Marker box as given: left, top, width, height, display px, in frame `at_frame`.
-    pub marker_box_px: [f64; 4],
-    /// Frame the box was drawn in.
-    pub at_frame: usize,
-    /// Steady patch, where one was given.
-    pub steady_box_px: Option<[f64; 4]>,
-    /// The start frame's picture.
-    pub still: Still,
-    /// The streak picture's lines.
-    pub streak: Streak,
-    /// Frames in which the marker was not found.
-    pub n_lost: usize,
+impl FittedPart {
+    fn into_measurement(
+        self,
+        sheet: RunSheet,
+        film: Option<FilmPart>,
+        rows: Vec<RecordRow>,
+    ) -> Measurement {
+        let Self {
+            fit,
+            quantities,
+            cycles,
+            energy,
+            verdicts,
+            run,
+        } = self;
+        let mut measurement = Measurement {
+            source_name: sheet.source_name().to_owned(),
+            source_sha256: film
+                .as_ref()
+                .map_or_else(String::new, |film| film.clip.sha256.clone()),
+            sheet,
+            film,
+            rows,
+            fit,
+            quantities,
+            cycles,
+            energy,
+            verdicts,
+            warnings: Vec::new(),
+        };
+        measurement.warnings = warnings::warnings(&measurement, &run);
+        measurement
+    }
 }
 
-/// Energies, where the mass is known.
-#[derive(Clone, Debug, PartialEq)]
-pub struct EnergyFigures {
-    /// Moving mass, kg, and its standard uncertainty where it was given.
-    pub mass_kg: f64,
-    /// Standard uncertainty of the mass, kg; None where not given, and then left out of the uncertainties below.
-    pub u_mass_kg: Option<f64>,
-    /// k = m ω_0², N/m.
-    pub stiffness: crate::uncertainty::Quantity,
-    /// ½ k A² at the start, J.
-    pub energy_at_start: crate::uncertainty::Quantity,
-    /// Energy lost in the first cycle, J.
-    pub energy_lost_first_cycle: crate::uncertainty::Quantity,
-}
-
-/// Something the user should know about this result.
-#[derive(Clone, Debug, PartialEq)]
-pub struct Warning {
-    /// Key in snake case.
-    pub key: &'static str,
-    /// One sentence with figures and what to do.
-    pub sentence: String,
-}
-
-/// One measurement, complete.
-#[derive(Clone, Debug, PartialEq)]
-pub struct Measurement {
-    /// File name of the clip or table.
-    pub source_name: String,
-    /// SHA-256 of the clip or table.
-    pub source_sha256: String,
-    /// The run sheet as TOML text: it repeats the run.
-    pub sheet_toml: String,
-    /// What only a film has; None after `refit`.
-    pub film: Option<FilmPart>,
-    /// The position–time record.
-    pub rows: Vec<RecordRow>,
-    /// The fit.
-    pub fit: MotionFit,
-    /// The figures.
-    pub quantities: MotionQuantities,
-    /// Per cycle.
-    pub cycles: Vec<Cycle>,
-    /// Energies, where a mass was given.
-    pub energy: Option<EnergyFigures>,
-    /// The verdicts.
-    pub verdicts: Vec<Verdict>,
-    /// The warnings, in order of importance.
-    pub warnings: Vec<Warning>,
+/// Relative standard uncertainty of a quantity; None where it has no value or no uncertainty.
+fn u_rel(quantity: &Quantity) -> Option<f64> {
+    Some(quantity.u? / quantity.value?.abs())
 }

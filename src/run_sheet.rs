@@ -1,11 +1,11 @@
 //! The run sheet: the TOML that repeats a run. Flags and sheet are two faces of it.
 //!
-//! This is the first of two layers: what was typed, checked for form only. [`RunSheet::resolve`] makes the second, a
-//! [`Run`] whose numbers are known to be usable; no file is touched in either.
+//! This is the first of two layers: what was typed, checked for form only. [`RunSheet::film_run`] makes the second, a
+//! [`FilmRun`] whose numbers are known to be usable; no file is touched in either.
 
 mod run;
 
-pub use run::{ClockLimit, Run};
+pub use run::{ClockLimit, FilmRun, FitRun};
 
 use serde::{Deserialize, Serialize};
 
@@ -16,11 +16,14 @@ pub struct RunSheet {
     /// The film; a relative path starts from the sheet's folder.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub clip: Option<String>,
+    /// A table of positions and times in place of a film; a relative path starts from the sheet's folder.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub positions: Option<String>,
     /// The marker.
-    #[serde(default)]
+    #[serde(default, skip_serializing_if = "is_default")]
     pub marker: MarkerSheet,
     /// The scale bar.
-    #[serde(default)]
+    #[serde(default, skip_serializing_if = "is_default")]
     pub scale: ScaleSheet,
     /// Time and clock.
     #[serde(default, skip_serializing_if = "is_default")]
@@ -188,6 +191,35 @@ impl RunSheet {
                 reason: error.message().replace('\n', " ").trim().to_owned(),
             }
         })
+    }
+
+    /// The same sheet for a film of this name or path.
+    #[must_use]
+    pub fn with_source(&self, clip: &str) -> Self {
+        Self {
+            clip: Some(clip.to_owned()),
+            positions: None,
+            ..self.clone()
+        }
+    }
+
+    /// The same sheet for a table of this name or path.
+    #[must_use]
+    pub fn with_table(&self, table: &str) -> Self {
+        Self {
+            clip: None,
+            positions: Some(table.to_owned()),
+            ..self.clone()
+        }
+    }
+
+    /// Name or path of the film or table, empty where the sheet names none.
+    #[must_use]
+    pub fn source_name(&self) -> &str {
+        self.clip
+            .as_deref()
+            .or(self.positions.as_deref())
+            .unwrap_or("")
     }
 
     /// The sheet as TOML text.

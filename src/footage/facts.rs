@@ -50,6 +50,10 @@ pub struct ClipFacts {
     pub capture_rate_metadata: Option<(f64, String)>,
     /// Frames decoded.
     pub n_frames: usize,
+    /// Frames the container promises; None where it does not say.
+    pub n_frames_promised: Option<usize>,
     /// Packets or pictures the decoder reported as damaged.
     pub n_damaged: usize,
+    /// Frames made of two fields taken one after the other.
+    pub n_interlaced: usize,
 }

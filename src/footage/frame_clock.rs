@@ -158,6 +158,7 @@ fn long_intervals(ticks: &[i64]) -> usize {
 
 #[cfg(test)]
 mod tests {
+    use super::super::grid::count;
     use super::*;
 
     fn clock_of(ticks: &[i64], time_base: [i64; 2]) -> (FrameClock, FrameTimes) {

@@ -220,7 +220,7 @@ pub(super) fn to_f64(ticks: i64) -> f64 {
     clippy::cast_precision_loss,
     reason = "the number of frames is limited"
 )]
-fn count(n: usize) -> f64 {
+pub(super) fn count(n: usize) -> f64 {
     n as f64
 }
 

@@ -2,9 +2,9 @@
 
 use super::{RunSheet, SheetError};
 
-/// A run whose numbers can be used.
+/// A run on a film whose numbers can be used.
 #[derive(Clone, Debug, PartialEq)]
-pub struct Run {
+pub struct FilmRun {
     /// Box around the marker: left, top, width, height, display px.
     pub marker_box_px: [f64; 4],
     /// Frame the boxes were drawn in, from 0.
@@ -17,18 +17,25 @@ pub struct Run {
     pub u_length_m: Option<f64>,
     /// Standard uncertainty of the reading of one end, px; None: a default that is said to be assumed.
     pub u_end_px: Option<f64>,
-    /// Start of the part that is fitted, s of the film's own time.
-    pub from_s: Option<f64>,
-    /// End of the part that is fitted, s of the film's own time.
-    pub to_s: Option<f64>,
     /// Rate the frames were captured at, Hz.
     pub capture_rate_hz: Option<f64>,
-    /// Limit of error of the clock's rate, ppm.
-    pub clock: ClockLimit,
     /// Time from the first row of a picture to its last, s.
     pub readout_s: Option<f64>,
     /// Box around a patch that stands still, display px.
     pub steady_box_px: Option<[f64; 4]>,
+    /// What film and table have in common.
+    pub fit: FitRun,
+}
+
+/// What is needed to fit a record, whether it comes from a film or from a table.
+#[derive(Clone, Debug, PartialEq)]
+pub struct FitRun {
+    /// Start of the part that is fitted, s of the film's own time.
+    pub from_s: Option<f64>,
+    /// End of the part that is fitted, s of the film's own time.
+    pub to_s: Option<f64>,
+    /// Limit of error of the clock's rate.
+    pub clock: ClockLimit,
     /// Moving mass, kg.
     pub mass_kg: Option<f64>,
     /// Standard uncertainty of the mass, kg.
@@ -65,11 +72,11 @@ impl ClockLimit {
 }
 
 impl RunSheet {
-    /// The run the sheet stands for, its numbers checked.
+    /// The run on a film that the sheet stands for, its numbers checked.
     ///
     /// # Errors
     /// [`SheetError`]: a key that is needed is missing, or a number cannot be.
-    pub fn resolve(&self) -> Result<Run, SheetError> {
+    pub fn film_run(&self) -> Result<FilmRun, SheetError> {
         let missing = |key, flag| SheetError::Missing { key, flag };
         let marker_box_px = self
             .marker
@@ -83,20 +90,30 @@ impl RunSheet {
             .scale
             .length_m
             .ok_or(missing("scale.length_m", "--length METRES"))?;
-        self.check_numbers()?;
-        Ok(Run {
+        Ok(FilmRun {
             marker_box_px,
             at_frame: self.marker.at_frame,
             bar_px: [[x1, y1], [x2, y2]],
             length_m,
             u_length_m: self.scale.u_length_m,
             u_end_px: self.scale.u_end_px,
-            from_s: self.time.from_s,
-            to_s: self.time.to_s,
             capture_rate_hz: self.time.capture_rate_hz,
-            clock: ClockLimit::given_or_assumed(self.time.clock_ppm),
             readout_s: self.time.readout_ms.map(|readout_ms| readout_ms * 1e-3),
             steady_box_px: self.steady.box_px,
+            fit: self.fit_run()?,
+        })
+    }
+
+    /// What the sheet says of the fit alone, its numbers checked.
+    ///
+    /// # Errors
+    /// [`SheetError::Number`] with key and value, [`SheetError::EmptyPart`], [`SheetError::Alone`].
+    pub fn fit_run(&self) -> Result<FitRun, SheetError> {
+        self.check_numbers()?;
+        Ok(FitRun {
+            from_s: self.time.from_s,
+            to_s: self.time.to_s,
+            clock: ClockLimit::given_or_assumed(self.time.clock_ppm),
             mass_kg: self.glider.mass_kg,
             u_mass_kg: self.glider.u_mass_kg,
         })
@@ -177,7 +194,7 @@ mod tests {
         let change = |change: fn(&mut RunSheet)| {
             let mut sheet = RunSheet::from_toml(SHEET).unwrap();
             change(&mut sheet);
-            sheet.resolve().map(|_| ()).unwrap_err().to_string()
+            sheet.film_run().map(|_| ()).unwrap_err().to_string()
         };
         assert!(
             change(|s| s.marker.box_px = Some([f64::NAN, 0.0, 1.0, 1.0])).contains("marker.box_px")

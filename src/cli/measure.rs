@@ -1,0 +1,177 @@
+//! `ebbmark measure CLIP|RUN.toml`
+
+use super::numbers::{four, one};
+use super::outcome::{Failure, print};
+use super::progress::Progress;
+use super::refit;
+use crate::measurement::{Measurement, measure};
+use crate::record;
+use crate::run_sheet::RunSheet;
+use std::path::{Path, PathBuf};
+
+/// What was typed after `measure`.
+#[derive(Debug, clap::Args)]
+pub(super) struct Arguments {
+    /// The film, or a run sheet (.toml) that names one
+    #[arg(value_name = "CLIP|RUN.toml")]
+    source: PathBuf,
+    /// Box around the marker in the start frame: left, top, width, height, display px
+    #[arg(long, value_name = "X,Y,W,H", value_parser = four, allow_hyphen_values = true)]
+    marker: Option<[f64; 4]>,
+    /// The two ends of a bar of known length, display px
+    #[arg(long, value_name = "X1,Y1,X2,Y2", value_parser = four, allow_hyphen_values = true)]
+    scale_bar: Option<[f64; 4]>,
+    /// Length of the bar, m
+    #[arg(long, value_name = "METRES", value_parser = one, allow_hyphen_values = true)]
+    length: Option<f64>,
+    /// Standard uncertainty of the length, m
+    #[arg(long, value_name = "METRES", value_parser = one, allow_hyphen_values = true)]
+    length_u: Option<f64>,
+    /// Standard uncertainty of reading one end of the bar, px
+    #[arg(long, value_name = "PX", value_parser = one, allow_hyphen_values = true)]
+    end_u: Option<f64>,
+    /// Frame the boxes were drawn in, from 0
+    #[arg(long, value_name = "N")]
+    at_frame: Option<usize>,
+    /// A patch that stands still, to take camera shake off
+    #[arg(long, value_name = "X,Y,W,H", value_parser = four, allow_hyphen_values = true)]
+    steady: Option<[f64; 4]>,
+    /// Rate the frames were captured at, for slow motion
+    #[arg(long, value_name = "HZ", value_parser = one, allow_hyphen_values = true)]
+    capture_rate: Option<f64>,
+    /// Time the sensor takes from a picture's first row to its last, ms
+    #[arg(long, value_name = "MS", value_parser = one, allow_hyphen_values = true)]
+    readout_ms: Option<f64>,
+    #[command(flatten)]
+    fit: FitArguments,
+    #[command(flatten)]
+    output: OutputArguments,
+}
+
+/// What film and table have in common.
+#[derive(Debug, clap::Args)]
+pub(super) struct FitArguments {
+    /// Start of the part that is fitted, s of the film's own time
+    #[arg(long, value_name = "S", value_parser = one, allow_hyphen_values = true)]
+    from: Option<f64>,
+    /// End of the part that is fitted, s of the film's own time
+    #[arg(long, value_name = "S", value_parser = one, allow_hyphen_values = true)]
+    to: Option<f64>,
+    /// Limit of error of the clock's rate, ppm (rectangular)
+    #[arg(long, value_name = "U", value_parser = one, allow_hyphen_values = true)]
+    clock_ppm: Option<f64>,
+    /// Moving mass, kg, for stiffness and energies
+    #[arg(long, value_name = "KG", value_parser = one, allow_hyphen_values = true)]
+    mass: Option<f64>,
+    /// Standard uncertainty of the mass, kg
+    #[arg(long, value_name = "KG", value_parser = one, allow_hyphen_values = true)]
+    mass_u: Option<f64>,
+}
+
+impl FitArguments {
+    /// Lays the flags over a sheet.
+    pub(super) fn lay_over(&self, sheet: &mut RunSheet) {
+        over(&mut sheet.time.from_s, self.from);
+        over(&mut sheet.time.to_s, self.to);
+        over(&mut sheet.time.clock_ppm, self.clock_ppm);
+        over(&mut sheet.glider.mass_kg, self.mass);
+        over(&mut sheet.glider.u_mass_kg, self.mass_u);
+    }
+}
+
+/// Where results go and what is said.
+#[derive(Debug, clap::Args)]
+pub(super) struct OutputArguments {
+    /// Folder for the results [default: the clip's name with .ebbmark, in the current folder]
+    #[arg(long, value_name = "DIR")]
+    out: Option<PathBuf>,
+    /// Print result.json to stdout, and nothing else there
+    #[arg(long)]
+    json: bool,
+    /// Print nothing but errors
+    #[arg(long)]
+    pub(super) quiet: bool,
+}
+
+impl OutputArguments {
+    /// The folder for the results of a file.
+    pub(super) fn folder(&self, source: &Path) -> PathBuf {
+        let default = || {
+            let stem = source.file_stem().map_or_else(|| "result".into(), |stem| stem.to_string_lossy().into_owned());
+            PathBuf::from(format!("{stem}.ebbmark"))
+        };
+        self.out.clone().unwrap_or_else(default)
+    }
+
+    /// Writes the folder and says what is in it.
+    pub(super) fn deliver(&self, measurement: &Measurement, source: &Path, folder: &Path) -> Result<(), Failure> {
+        record::write(measurement, source, folder)?;
+        if self.json {
+            return print(&record::result_json_text(measurement));
+        }
+        if self.quiet {
+            return Ok(());
+        }
+        print(&format!("{}\nReport: {}\n", record::summary(measurement).trim_end(), folder.join("report.html").display()))
+    }
+}
+
+/// Measures, writes the folder, says what came out.
+pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
+    let (mut sheet, base) = sheet_of(&arguments.source)?;
+    arguments.lay_over(&mut sheet);
+    if let Some(table) = &sheet.positions {
+        let table = base.join(table);
+        return refit::run_on(&table, &sheet, &arguments.output);
+    }
+    let Some(clip) = &sheet.clip else {
+        return Err(Failure::usage(format!("{}: names no film; give `clip = \"NAME.mp4\"`", arguments.source.display())));
+    };
+    let clip = base.join(clip);
+    let folder = arguments.output.folder(&clip);
+    record::check_destination(&folder)?;
+    let measurement = {
+        let bar = Progress::new(arguments.output.quiet);
+        measure(&clip, &sheet, &mut |done, of| bar.tell(done, of))?
+    };
+    arguments.output.deliver(&measurement, &clip, &folder)
+}
+
+/// The sheet behind a path: the file itself, or one that names the film; and the folder its paths start from.
+fn sheet_of(source: &Path) -> Result<(RunSheet, PathBuf), Failure> {
+    if source.extension().is_none_or(|extension| !extension.eq_ignore_ascii_case("toml")) {
+        let Some(clip) = source.to_str() else {
+            return Err(Failure::input(format!("{}: the file's name is not valid UTF-8; rename the clip", source.display())));
+        };
+        return Ok((RunSheet::default().with_source(clip), PathBuf::new()));
+    }
+    let text = std::fs::read_to_string(source).map_err(|error| {
+        Failure::input(format!("{}: the run sheet cannot be read ({error}); check its name", source.display()))
+    })?;
+    let sheet =
+        RunSheet::from_toml(&text).map_err(|error| Failure::usage(format!("{}: {error}", source.display())))?;
+    Ok((sheet, source.parent().map(Path::to_path_buf).unwrap_or_default()))
+}
+
+impl Arguments {
+    fn lay_over(&self, sheet: &mut RunSheet) {
+        over(&mut sheet.marker.box_px, self.marker);
+        over(&mut sheet.scale.bar_px, self.scale_bar);
+        over(&mut sheet.scale.length_m, self.length);
+        over(&mut sheet.scale.u_length_m, self.length_u);
+        over(&mut sheet.scale.u_end_px, self.end_u);
+        over(&mut sheet.steady.box_px, self.steady);
+        over(&mut sheet.time.capture_rate_hz, self.capture_rate);
+        over(&mut sheet.time.readout_ms, self.readout_ms);
+        if let Some(at_frame) = self.at_frame {
+            sheet.marker.at_frame = at_frame;
+        }
+        self.fit.lay_over(sheet);
+    }
+}
+
+fn over<T: Copy>(key: &mut Option<T>, flag: Option<T>) {
+    if flag.is_some() {
+        *key = flag;
+    }
+}

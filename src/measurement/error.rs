@@ -1,0 +1,118 @@
+//! Why there is no measurement, and whose fault it is.
+
+use crate::footage::FootageError;
+use crate::motion::MotionError;
+use crate::run_sheet::SheetError;
+use crate::scale::{BarError, ScaleError};
+use crate::track::TrackError;
+use std::path::PathBuf;
+
+/// Who can mend it; decides the exit code.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Fault {
+    /// The flags or the sheet: exit code 2.
+    Usage,
+    /// The file: exit code 3.
+    Input,
+    /// The file is sound, but what it shows cannot be measured: exit code 4.
+    NotMeasurable,
+}
+
+/// Why there is no measurement.
+#[derive(Debug, thiserror::Error)]
+#[non_exhaustive]
+pub enum MeasureError {
+    /// The sheet or the flags.
+    #[error(transparent)]
+    Sheet(#[from] SheetError),
+    /// The scale bar.
+    #[error(transparent)]
+    Bar(#[from] BarError),
+    /// The film.
+    #[error(transparent)]
+    Footage(#[from] FootageError),
+    /// The marker.
+    #[error(transparent)]
+    Track(#[from] TrackError),
+    /// The axis.
+    #[error(transparent)]
+    Scale(#[from] ScaleError),
+    /// The motion.
+    #[error(transparent)]
+    Motion(#[from] MotionError),
+    /// The marker went away and did not come back.
+    #[error(
+        "the marker was lost at frame {frame} ({t_s:.2} s) and not found again in the {n_after} frames after it; give --to {t_s:.2} to measure the part before, or film with the whole travel in view"
+    )]
+    MarkerLeft {
+        /// First frame without it, from 0.
+        frame: usize,
+        /// Its time in the film, s.
+        t_s: f64,
+        /// Frames from there to the end of the part to be fitted.
+        n_after: usize,
+    },
+    /// The marker was found in too few frames.
+    #[error(
+        "the marker was found in {n_seen} of {n_frames} frames only (lost first at frame {first_lost}); mark a patch with more contrast, keep it in view, or choose the part with --from and --to"
+    )]
+    MarkerLost {
+        /// Frames it was found in.
+        n_seen: usize,
+        /// Frames of the part to be fitted.
+        n_frames: usize,
+        /// First frame without it, from 0.
+        first_lost: usize,
+    },
+    /// No frame lies between `--from` and `--to`.
+    #[error(
+        "no frame lies between {from_s} s and {to_s} s; the film runs from {first_s:.2} s to {last_s:.2} s"
+    )]
+    EmptyPart {
+        /// Start of the part asked for, s.
+        from_s: f64,
+        /// End of the part asked for, s.
+        to_s: f64,
+        /// Time of the first frame, s.
+        first_s: f64,
+        /// Time of the last frame, s.
+        last_s: f64,
+    },
+    /// A table of positions cannot be read.
+    #[error("{}: {reason}", path.display())]
+    Table {
+        /// The table.
+        path: PathBuf,
+        /// What is wrong, where, and what to do.
+        reason: String,
+    },
+}
+
+impl MeasureError {
+    /// Whose fault it is.
+    #[must_use]
+    pub fn fault(&self) -> Fault {
+        match self {
+            Self::Sheet(_) | Self::Bar(_) | Self::EmptyPart { .. } => Fault::Usage,
+            Self::Footage(FootageError::CaptureRate { .. }) => Fault::Usage,
+            Self::Footage(_) | Self::Table { .. } => Fault::Input,
+            Self::Track(error) => track_fault(error),
+            Self::Scale(_)
+            | Self::Motion(_)
+            | Self::MarkerLeft { .. }
+            | Self::MarkerLost { .. } => Fault::NotMeasurable,
+        }
+    }
+}
+
+fn track_fault(error: &TrackError) -> Fault {
+    match error {
+        TrackError::Footage(_) => Fault::Input,
+        TrackError::OutsidePicture { .. }
+        | TrackError::TooSmall { .. }
+        | TrackError::TooLarge { .. }
+        | TrackError::NoSuchFrame { .. } => Fault::Usage,
+        // What the box shows is the film's doing: it can be read, but not measured there.
+        _ => Fault::NotMeasurable,
+    }
+}

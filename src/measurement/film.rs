@@ -1,0 +1,462 @@
+//! From the track of a film to rows of the position–time record.
+
+use super::{FilmPart, MeasureError, RecordRow, RowStatus, ScaleFacts, Streak, still};
+use crate::footage::{
+    CaptureRate, ClipFacts, Footage, FootageError, FrameClock, FrameTimes, Orientation,
+    StreamFacts, frame_clock, time_scale,
+};
+use crate::run_sheet::{FilmRun, FitRun};
+use crate::scale::{ScaleAxis, ScaleBar, motion_axis};
+use crate::track::{FilmTrack, PixelBox, Plan, Sighting, TrackError};
+use sha2::{Digest, Sha256};
+use std::path::Path;
+
+/// SHA-256 of a file, lower-case hexadecimal.
+pub(super) fn sha256(path: &Path) -> std::io::Result<String> {
+    let mut hasher = Sha256::new();
+    std::io::copy(&mut std::fs::File::open(path)?, &mut hasher)?;
+    Ok(hasher
+        .finalize()
+        .iter()
+        .map(|byte| format!("{byte:02x}"))
+        .collect())
+}
+
+/// What to follow, in coded pixels.
+pub(super) fn plan(run: &FilmRun, facts: &StreamFacts) -> Result<Plan, MeasureError> {
+    let orientation = &facts.orientation;
+    let [[x1, y1], [x2, y2]] = run.bar_px;
+    let marker = coded_box(run.marker_box_px, orientation, "marker")?;
+    let steady = run
+        .steady_box_px
+        .map(|box_px| coded_box(box_px, orientation, "steady"))
+        .transpose()?;
+    Ok(Plan {
+        marker,
+        at_frame: run.at_frame,
+        steady,
+        along: orientation.coded_direction([x2 - x1, y2 - y1]),
+    })
+}
+
+/// The coded pixels of a display box, which must lie in the picture.
+fn coded_box(
+    box_px: [f64; 4],
+    orientation: &Orientation,
+    what: &'static str,
+) -> Result<PixelBox, TrackError> {
+    let [left, top, width, height] = box_px;
+    let [picture_width, picture_height] = orientation.display_size_px();
+    // Half a pixel of slack: a box drawn to the very edge is inside.
+    if left + width > picture_width + 0.5 || top + height > picture_height + 0.5 {
+        return Err(TrackError::OutsidePicture {
+            what,
+            left,
+            top,
+            width,
+            height,
+            picture_width,
+            picture_height,
+        });
+    }
+    // Edges, not centres, so that a turn keeps the box' size.
+    let corner = |x: f64, y: f64| {
+        orientation
+            .coded_from_display([x - 0.5, y - 0.5])
+            .map(|at| at + 0.5)
+    };
+    let (a, b) = (corner(left, top), corner(left + width, top + height));
+    let span = |axis: usize| {
+        let (low, high) = (a[axis].min(b[axis]).round(), a[axis].max(b[axis]).round());
+        (whole(low), usize::try_from(whole(high - low)).unwrap_or(0))
+    };
+    let ((left, width), (top, height)) = (span(0), span(1));
+    Ok(PixelBox {
+        left,
+        top,
+        width,
+        height,
+    })
+}
+
+/// Facts of the clip after it was decoded.
+pub(super) fn clip_facts(
+    footage: &Footage,
+    clip: &Path,
+    track: &FilmTrack,
+    sha256: std::thread::Result<std::io::Result<String>>,
+) -> Result<ClipFacts, MeasureError> {
+    let unreadable = |reason: String| FootageError::Unreadable {
+        path: clip.to_path_buf(),
+        reason,
+    };
+    let sha256 = sha256
+        .map_err(|_| unreadable("its check sum could not be taken".to_owned()))?
+        .map_err(|error| unreadable(error.to_string()))?;
+    let facts = footage.facts().clone();
+    let (rotation_deg, mirrored) = facts.orientation.turn();
+    Ok(ClipFacts {
+        file_name: clip
+            .file_name()
+            .map_or_else(String::new, |name| name.to_string_lossy().into_owned()),
+        sha256,
+        container: facts.container,
+        codec: facts.codec,
+        pixel_format: facts.pixel_format,
+        coded_size_px: facts.orientation.coded_size_px(),
+        display_size_px: facts.orientation.display_size_px(),
+        rotation_deg,
+        mirrored,
+        pixel_aspect: facts.orientation.pixel_aspect(),
+        time_base: facts.time_base,
+        capture_rate_metadata: facts.capture_rate_metadata,
+        n_frames: track.notes.len(),
+        n_frames_promised: facts.n_frames_promised,
+        n_damaged: footage.n_damaged(),
+        n_interlaced: track.notes.iter().filter(|note| note.interlaced).count(),
+    })
+}
+
+/// A film whose marker was followed, with its times, its axis and its scale.
+pub(super) struct Film {
+    track: FilmTrack,
+    orientation: Orientation,
+    clock: FrameClock,
+    capture_rate: CaptureRate,
+    times: FrameTimes,
+    /// Marker in display px, camera shake taken off; None where it was not seen.
+    path_px: Vec<Option<[f64; 2]>>,
+    scale: ScaleAxis,
+    n_unsteady: usize,
+}
+
+impl Film {
+    /// Lays times and an axis through a track.
+    pub(super) fn new(
+        run: &FilmRun,
+        bar: ScaleBar,
+        facts: &StreamFacts,
+        track: FilmTrack,
+        clip: &Path,
+    ) -> Result<Self, MeasureError> {
+        if track.notes.is_empty() {
+            return Err(FootageError::NoPictures {
+                path: clip.to_path_buf(),
+                n_damaged: 0,
+            }
+            .into());
+        }
+        let stamps: Vec<Option<i64>> = track.notes.iter().map(|note| note.stamp).collect();
+        let (mut clock, times) = frame_clock(&stamps, facts.time_base, clip)?;
+        let (stretch, capture_rate) = time_scale(
+            1.0 / clock.interval_s,
+            run.capture_rate_hz,
+            facts.capture_rate_metadata.as_ref(),
+        )?;
+        clock.time_scale = stretch;
+        clock.u_t_s *= stretch;
+        let (path_px, n_unsteady) = display_path(&track, &facts.orientation);
+        let part = Part::of(&run.fit, &times)?;
+        let seen: Vec<[f64; 2]> = part
+            .frames(&times)
+            .filter_map(|frame| path_px[frame])
+            .collect();
+        part.check_seen(&path_px, &times)?;
+        let axis = motion_axis(&seen)?;
+        Ok(Self {
+            track,
+            orientation: facts.orientation,
+            clock,
+            capture_rate,
+            times,
+            path_px,
+            scale: ScaleAxis { bar, axis },
+            n_unsteady,
+        })
+    }
+
+    /// Relative standard uncertainty of the scale, and whether a part of it is assumed.
+    pub(super) fn u_scale_rel(&self) -> (f64, bool) {
+        (self.scale.bar.u_rel(), self.scale.bar.assumed())
+    }
+
+    /// A row for every frame; the fit's columns are still empty.
+    pub(super) fn rows(&self, run: &FilmRun) -> Result<Vec<RecordRow>, MeasureError> {
+        let part = Part::of(&run.fit, &self.times)?;
+        let direction = self.orientation.coded_direction(self.scale.axis.direction);
+        // A coded px along the axis is this many display px long (pixels need not be square).
+        let display_px_per_px = 1.0 / direction[0].hypot(direction[1]);
+        let rows = (0..self.times.t_s.len()).map(|frame| {
+            let sighting = self.track.marker[frame]
+                .seen()
+                .filter(|_| self.path_px[frame].is_some());
+            let metres = self.path_px[frame].map(|p_px| self.scale.metres_from_px(p_px));
+            let u_px = sighting.map(|sighting| sighting.u_along_px(direction) * display_px_per_px);
+            let outside = self.times.repeated[frame] || !part.holds(self.times.t_s[frame]);
+            RecordRow {
+                frame,
+                t_s: self.capture_time_s(frame, sighting, run),
+                u_t_s: self.clock.u_t_s,
+                x_m: metres.map(|[along, _]| along),
+                u_x_m: u_px.map(|u_px| u_px * self.scale.bar.m_per_px()),
+                off_axis_m: metres.map(|[_, off]| off),
+                p_px: self.path_px[frame],
+                match_score: sighting.map(|sighting| sighting.match_score),
+                status: match (metres, outside) {
+                    (None, _) => RowStatus::Lost,
+                    (Some(_), true) => RowStatus::Outside,
+                    (Some(_), false) => RowStatus::Used,
+                },
+                fit_m: None,
+                residual_m: None,
+            }
+        });
+        Ok(rows.collect())
+    }
+
+    /// When the marker's row of the sensor was read, s of capture time.
+    fn capture_time_s(&self, frame: usize, sighting: Option<&Sighting>, run: &FilmRun) -> f64 {
+        let t_s = self.times.t_s[frame] * self.clock.time_scale;
+        let (Some(readout_s), Some(sighting)) = (run.readout_s, sighting) else {
+            return t_s;
+        };
+        // Row r of a picture is read at t + readout · r/height (rolling shutter); the stamp is that of the first row.
+        t_s + readout_s * (sighting.p_px[1] + 0.5) / f64::from(self.orientation.coded_size_px()[1])
+    }
+
+    /// What only a film has, for the record.
+    pub(super) fn into_part(self, clip: ClipFacts, run: &FilmRun, rows: &[RecordRow]) -> FilmPart {
+        let bar = &self.scale.bar;
+        let scale = ScaleFacts {
+            bar_px: bar.ends_px(),
+            length_m: bar.length_m(),
+            u_length_m: bar.u_length_m(),
+            u_end_px: bar.u_end_px(),
+            m_per_px: bar.m_per_px(),
+            u_scale_rel: bar.u_rel(),
+            assumed: bar.assumed(),
+            origin_px: self.scale.axis.origin_px,
+            direction: self.scale.axis.direction,
+            off_axis_rms_m: self.scale.axis.off_axis_rms_px * bar.m_per_px(),
+            bar_angle_rad: self.scale.bar_angle_rad(),
+        };
+        FilmPart {
+            scale,
+            marker_box_px: run.marker_box_px,
+            at_frame: run.at_frame,
+            steady_box_px: run.steady_box_px,
+            still: still::upright(
+                &self.track.start_picture,
+                self.track.start_shrunk_by,
+                &self.orientation,
+            ),
+            streak: self.streak(rows),
+            n_lost: rows
+                .iter()
+                .filter(|row| row.status == RowStatus::Lost)
+                .count(),
+            n_unsteady: self.n_unsteady,
+            capture_rate: self.capture_rate,
+            frame_clock: self.clock,
+            clip,
+        }
+    }
+
+    /// The lines nearer to the axis, with positions counted along the axis from its origin.
+    fn streak(&self, rows: &[RecordRow]) -> Streak {
+        let display = |direction: [f64; 2]| {
+            let origin = self.orientation.display_from_coded([0.0, 0.0]);
+            let end = self.orientation.display_from_coded(direction);
+            [end[0] - origin[0], end[1] - origin[1]]
+        };
+        let [dx, dy] = self.scale.axis.direction;
+        // Display px along the axis for a coded px along the lines.
+        let gain = |lines: &crate::track::StreakLines| {
+            let [x, y] = display(lines.direction);
+            x * dx + y * dy
+        };
+        let [along, across] = &self.track.streaks;
+        let lines = if gain(along).abs() >= gain(across).abs() {
+            along
+        } else {
+            across
+        };
+        let gain = gain(lines);
+        let [start_px, _] = self
+            .scale
+            .axis
+            .along_and_off_px(self.orientation.display_from_coded(lines.origin_px));
+        let first_px = start_px + gain * lines.first_px;
+        let mut streak = Streak {
+            width: lines.width,
+            lines: Vec::new(),
+            t_s: Vec::new(),
+            first_px,
+            step_px: gain * lines.step_px,
+        };
+        for (row, line) in rows.iter().zip(&lines.lines) {
+            if let Some(line) = line {
+                streak.t_s.push(row.t_s);
+                streak.lines.extend_from_slice(line);
+            }
+        }
+        if streak.step_px < 0.0 {
+            // The lines run against the axis: turn them round, so that x grows to the right.
+            streak.first_px += streak.step_px * to_f64(streak.width.saturating_sub(1));
+            streak.step_px = -streak.step_px;
+            for line in streak.lines.chunks_exact_mut(streak.width.max(1)) {
+                line.reverse();
+            }
+        }
+        streak
+    }
+}
+
+/// The marker's path in display px, less the steady patch's, and the number of frames lost with the patch alone.
+fn display_path(track: &FilmTrack, orientation: &Orientation) -> (Vec<Option<[f64; 2]>>, usize) {
+    let display = |sighting: &Sighting| orientation.display_from_coded(sighting.p_px);
+    let Some(steady) = &track.steady else {
+        return (
+            track
+                .marker
+                .iter()
+                .map(|outcome| outcome.seen().map(display))
+                .collect(),
+            0,
+        );
+    };
+    let rest = steady
+        .iter()
+        .find_map(|outcome| outcome.seen())
+        .map(display);
+    let mut n_unsteady = 0;
+    let path = track
+        .marker
+        .iter()
+        .zip(steady)
+        .map(|(marker, steady)| {
+            let marker = marker.seen().map(display)?;
+            let (Some(steady), Some(rest)) = (steady.seen().map(display), rest) else {
+                n_unsteady += 1;
+                return None;
+            };
+            Some([
+                marker[0] - steady[0] + rest[0],
+                marker[1] - steady[1] + rest[1],
+            ])
+        })
+        .collect();
+    (path, n_unsteady)
+}
+
+/// The part of the film that is fitted, in file time.
+struct Part {
+    from_s: f64,
+    to_s: f64,
+}
+
+/// Share of a part's frames from which a marker that never comes back counts as having left.
+const LEFT_SHARE: f64 = 0.1;
+/// Share of a part's frames in which the marker must be found.
+const SEEN_SHARE: f64 = 0.5;
+
+impl Part {
+    fn of(run: &FitRun, times: &FrameTimes) -> Result<Self, MeasureError> {
+        let part = Self {
+            from_s: run.from_s.unwrap_or(f64::NEG_INFINITY),
+            to_s: run.to_s.unwrap_or(f64::INFINITY),
+        };
+        if part.frames(times).next().is_none() {
+            let (first_s, last_s) = ends(&times.t_s);
+            return Err(MeasureError::EmptyPart {
+                from_s: part.from_s,
+                to_s: part.to_s,
+                first_s,
+                last_s,
+            });
+        }
+        Ok(part)
+    }
+
+    fn holds(&self, t_s: f64) -> bool {
+        (self.from_s..=self.to_s).contains(&t_s)
+    }
+
+    fn frames<'a>(&'a self, times: &'a FrameTimes) -> impl Iterator<Item = usize> + 'a {
+        (0..times.t_s.len()).filter(|&frame| self.holds(times.t_s[frame]) && !times.repeated[frame])
+    }
+
+    /// Refuses a part in which the marker left for good, or was seen too seldom.
+    fn check_seen(
+        &self,
+        path_px: &[Option<[f64; 2]>],
+        times: &FrameTimes,
+    ) -> Result<(), MeasureError> {
+        let frames: Vec<usize> = self.frames(times).collect();
+        let n_seen = frames
+            .iter()
+            .filter(|&&frame| path_px[frame].is_some())
+            .count();
+        let Some(&first_lost) = frames.iter().find(|&&frame| path_px[frame].is_none()) else {
+            return Ok(());
+        };
+        let n_tail = frames
+            .iter()
+            .rev()
+            .take_while(|&&frame| path_px[frame].is_none())
+            .count();
+        let share = |n: usize| to_f64(n) / to_f64(frames.len());
+        if n_seen > 0 && share(n_tail) > LEFT_SHARE {
+            let frame = frames[frames.len() - n_tail];
+            return Err(MeasureError::MarkerLeft {
+                frame,
+                t_s: times.t_s[frame],
+                n_after: n_tail,
+            });
+        }
+        if share(n_seen) < SEEN_SHARE {
+            return Err(MeasureError::MarkerLost {
+                n_seen,
+                n_frames: frames.len(),
+                first_lost,
+            });
+        }
+        Ok(())
+    }
+}
+
+/// Marks rows of a table before `--from` and after `--to`.
+pub(super) fn mark_outside(rows: &mut [RecordRow], run: &FitRun) -> Result<(), MeasureError> {
+    let times = FrameTimes {
+        t_s: rows.iter().map(|row| row.t_s).collect(),
+        repeated: vec![false; rows.len()],
+    };
+    let part = Part::of(run, &times)?;
+    for row in rows
+        .iter_mut()
+        .filter(|row| row.status == RowStatus::Used && !part.holds(row.t_s))
+    {
+        row.status = RowStatus::Outside;
+    }
+    Ok(())
+}
+
+fn ends(t_s: &[f64]) -> (f64, f64) {
+    t_s.iter()
+        .fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), &t_s| {
+            (low.min(t_s), high.max(t_s))
+        })
+}
+
+#[expect(clippy::cast_precision_loss, reason = "numbers of frames and pixels")]
+fn to_f64(n: usize) -> f64 {
+    n as f64
+}
+
+#[expect(
+    clippy::cast_possible_truncation,
+    reason = "`as` saturates; the value is a rounded pixel number"
+)]
+fn whole(value: f64) -> i64 {
+    value as i64
+}
