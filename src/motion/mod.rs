@@ -2,6 +2,7 @@
 //!
 //! In: [`PositionRecord`]s. Out: a [`MotionFit`], the [`MotionQuantities`] derived from it, and a row per [`Cycle`].
 
+pub mod least_squares;
 mod position;
 mod types;
 
