@@ -238,15 +238,7 @@ struct Tangent {
 /// QR of the Jacobian with columns scaled to length one: normal equations would lose half the digits.
 fn tangent<P: Residuals>(problem: &P, parameters: &[f64], residuals: &[f64]) -> Option<Tangent> {
     let n_parameters = parameters.len();
-    let mut jacobian = DMatrix::zeros(residuals.len(), n_parameters);
-    problem.jacobian(parameters, &mut jacobian);
-    let length: Vec<f64> = jacobian.column_iter().map(|column| column.norm()).collect();
-    if length.iter().any(|l| !l.is_finite() || *l <= 0.0) {
-        return None;
-    }
-    for (mut column, l) in jacobian.column_iter_mut().zip(&length) {
-        column /= *l;
-    }
+    let (jacobian, length) = scaled_jacobian(problem, parameters)?;
     let qr = jacobian.qr();
     let mut rotated = DVector::from_column_slice(residuals);
     qr.q_tr_mul(&mut rotated);
@@ -263,6 +255,28 @@ fn tangent<P: Residuals>(problem: &P, parameters: &[f64], residuals: &[f64]) -> 
     }
     let finite = step.iter().chain(covariance_factor.iter()).all(|v| v.is_finite());
     finite.then(|| Tangent { step, covariance_factor, removable: along.norm() })
+}
+
+/// Orthonormal columns (n × p) that span the tangent plane at `parameters`: what a fit takes out of the residuals.
+///
+/// None where the model is not finite there or does not depend on a parameter.
+pub fn tangent_basis<P: Residuals>(problem: &P, parameters: &[f64]) -> Option<DMatrix<f64>> {
+    let (jacobian, _) = scaled_jacobian(problem, parameters)?;
+    Some(jacobian.qr().q())
+}
+
+/// The Jacobian with columns of length one, and their lengths.
+fn scaled_jacobian<P: Residuals>(problem: &P, parameters: &[f64]) -> Option<(DMatrix<f64>, Vec<f64>)> {
+    let mut jacobian = DMatrix::zeros(problem.n_residuals(), parameters.len());
+    problem.jacobian(parameters, &mut jacobian);
+    let length: Vec<f64> = jacobian.column_iter().map(|column| column.norm()).collect();
+    if length.iter().any(|l| !l.is_finite() || *l <= 0.0) {
+        return None;
+    }
+    for (mut column, l) in jacobian.column_iter_mut().zip(&length) {
+        column /= *l;
+    }
+    Some((jacobian, length))
 }
 
 /// Gauss–Newton steps while the removable part of the residual falls, then the test of convergence.
