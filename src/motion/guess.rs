@@ -21,7 +21,7 @@ const GRID_FINE: usize = 8;
 /// See [`GRID_FINE`].
 const GRID_COARSE: usize = 4;
 /// Records of up to this many cells get the fine grid.
-const FINE_UP_TO_CELLS: usize = 4096;
+const FINE_UP_TO_CELLS: usize = 1024;
 /// Cells at most: a record with a gap of a year must not take all memory.
 const MAX_CELLS: usize = 1 << 19;
 /// Readings off an even clock by more than this part of its interval get cells of half the interval.
@@ -134,8 +134,9 @@ fn scan(readings: &Readings, x_m: &[f64]) -> Option<(f64, f64, f64)> {
         .collect();
     let mut best: Option<(f64, f64, f64)> = None;
     let ladder = std::iter::once(0.0).chain((0..).map(|k| f64::from(k).exp2() / span)).take_while(|gamma| *gamma <= MAX_DECAY_REL * highest);
+    let mut sums = Sums::new(&cells);
     for gamma in ladder {
-        let sums = Sums::new(&cells, gamma, transform.as_ref());
+        sums.take(&cells, gamma, transform.as_ref());
         for &(m, omega) in grid.iter().filter(|(_, omega)| gamma <= MAX_DECAY_REL * *omega) {
             let explained = sums.removed_at(m) / total;
             if explained.is_finite() && best.is_none_or(|(_, _, most)| explained > most) {
@@ -157,20 +158,29 @@ struct Sums {
     first: Vec<Complex64>,
     /// Transform of e^(−2γτ) count.
     second: Vec<Complex64>,
+    scratch: Vec<Complex64>,
 }
 
 impl Sums {
-    fn new(cells: &Cells, gamma: f64, transform: &dyn rustfft::Fft<f64>) -> Self {
-        let (mut first, mut second) = (vec![Complex64::default(); cells.n_transform], vec![Complex64::default(); cells.n_transform]);
+    /// Room for the sums; one set serves the whole ladder, because clearing fresh pages would cost as much as the transforms.
+    fn new(cells: &Cells) -> Self {
+        let empty = || vec![Complex64::default(); cells.n_transform];
+        Self { n: cells.count.iter().sum(), envelope2: 0.0, x: cells.sum.iter().sum(), first: empty(), second: empty(), scratch: empty() }
+    }
+
+    fn take(&mut self, cells: &Cells, gamma: f64, transform: &dyn rustfft::Fft<f64>) {
+        self.first.fill(Complex64::default());
+        self.second.fill(Complex64::default());
+        self.scratch.resize(transform.get_inplace_scratch_len(), Complex64::default());
+        self.envelope2 = 0.0;
         for (i, (count, sum)) in cells.count.iter().zip(&cells.sum).enumerate() {
             let envelope = (-gamma * i as f64 * cells.width_s).exp();
-            first[i] = Complex64::new(count * envelope, sum * envelope);
-            second[i] = Complex64::new(count * envelope * envelope, 0.0);
+            self.first[i] = Complex64::new(count * envelope, sum * envelope);
+            self.second[i] = Complex64::new(count * envelope * envelope, 0.0);
+            self.envelope2 += count * envelope * envelope;
         }
-        let envelope2 = second.iter().map(|z| z.re).sum();
-        transform.process(&mut first);
-        transform.process(&mut second);
-        Self { n: cells.count.iter().sum(), envelope2, x: cells.sum.iter().sum(), first, second }
+        transform.process_with_scratch(&mut self.first, &mut self.scratch);
+        transform.process_with_scratch(&mut self.second, &mut self.scratch);
     }
 
     /// Sum of squares removed by e^(−γτ)(a cos ωτ + b sin ωτ) beyond what the mean removes.

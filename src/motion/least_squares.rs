@@ -127,7 +127,7 @@ pub fn minimise<P: Residuals>(problem: &P, start: &[f64], scale: Option<&[f64]>)
         let stopped = trust_region(problem, &parameters, &unit);
         let settled = stopped == parameters;
         parameters = stopped;
-        let polished = polish(problem, &parameters, run);
+        let polished = polish(problem, &parameters, 0.0, run);
         if let Ok(solution) = polished {
             return Ok(solution);
         }
@@ -139,13 +139,14 @@ pub fn minimise<P: Residuals>(problem: &P, start: &[f64], scale: Option<&[f64]>)
     last
 }
 
-/// Minimises from a start that is close already, by Gauss–Newton steps alone: a fraction of the cost of [`minimise`].
+/// Minimises from a start that is close already, by Gauss–Newton steps alone and only until the test of convergence passes: a fraction of the
+/// cost of [`minimise`], which goes on to the last digit.
 ///
 /// # Errors
 /// As [`minimise`]; [`LeastSquaresError::NotConverged`] where the start was not close.
 pub fn refine<P: Residuals>(problem: &P, start: &[f64]) -> Result<Solution, LeastSquaresError> {
     check(problem, start)?;
-    polish(problem, start, 0)
+    polish(problem, start, RELATIVE_OFFSET_MAX, 0)
 }
 
 /// The door: enough residuals, and finite ones.
@@ -279,14 +280,22 @@ fn scaled_jacobian<P: Residuals>(problem: &P, parameters: &[f64]) -> Option<(DMa
     Some((jacobian, length))
 }
 
-/// Gauss–Newton steps while the removable part of the residual falls, then the test of convergence.
-fn polish<P: Residuals>(problem: &P, start: &[f64], n_runs: usize) -> Result<Solution, LeastSquaresError> {
+/// Gauss–Newton steps while the removable part of the residual falls and the relative offset is above `enough`, then the test of convergence.
+fn polish<P: Residuals>(problem: &P, start: &[f64], enough: f64, n_runs: usize) -> Result<Solution, LeastSquaresError> {
     let n_parameters = start.len();
     let singular = LeastSquaresError::Singular { n_parameters };
     let mut parameters = start.to_vec();
     let (mut residuals, mut sum) = sum_of_squares(problem, &parameters);
     let mut plane = tangent(problem, &parameters, &residuals).ok_or(singular)?;
+    let (p, degrees_of_freedom) = (n_parameters as f64, (residuals.len() - n_parameters) as f64);
+    let offset = |sum: f64, removable: f64| {
+        let left = (sum - removable * removable).max(0.0);
+        removable / p.sqrt() / (left / degrees_of_freedom).sqrt()
+    };
     for _ in 0..MAX_POLISH_STEPS {
+        if offset(sum, plane.removable) <= enough {
+            break;
+        }
         let next: Vec<f64> = parameters.iter().zip(plane.step.iter()).map(|(p, d)| p + d).collect();
         let (next_residuals, next_sum) = sum_of_squares(problem, &next);
         if !next_sum.is_finite() {
@@ -298,9 +307,7 @@ fn polish<P: Residuals>(problem: &P, start: &[f64], n_runs: usize) -> Result<Sol
         }
         (parameters, residuals, sum, plane) = (next, next_residuals, next_sum, next_plane);
     }
-    let (p, degrees_of_freedom) = (n_parameters as f64, (residuals.len() - n_parameters) as f64);
-    let left = (sum - plane.removable * plane.removable).max(0.0);
-    let relative_offset = plane.removable / p.sqrt() / (left / degrees_of_freedom).sqrt();
+    let relative_offset = offset(sum, plane.removable);
     let step_negligible = plane.step.iter().zip(own_scale(&parameters)).all(|(d, s)| d.abs() <= STEP_MAX_REL * s);
     let ending = match (relative_offset <= RELATIVE_OFFSET_MAX, step_negligible) {
         (true, _) => Ending::Orthogonal,

@@ -15,7 +15,7 @@ mod quantities;
 mod readings;
 mod robust;
 
-pub use cycles::Cycle;
+pub use cycles::{Cycle, cycles};
 pub use error::MotionError;
 pub use fit::{MIN_CYCLES, MotionFit, fit};
 pub use laws::LawTrial;
