@@ -222,9 +222,11 @@ mod tests {
 
     #[test]
     fn a_shift_at_the_edge_of_the_timing_is_undecided() {
-        // The clock's U(T) alone is the shift of 15 µs; what the fit adds is less than the shift's own uncertainty.
-        let verdicts = on(0.005, 30, 8.0, 0.5 * 0.5 * 0.005_f64.powi(2));
+        // With a perfect clock the ratio is shift/2u; a clock is then chosen that brings 2u to the shift of 1.2 s · ζ²/2.
+        let shift_s = 1.2 * 0.5 * 0.02_f64.powi(2);
+        let u_fit_s = 0.5 * shift_s / on(0.02, 4, 20.0, 0.0)[1].ratio;
+        let verdicts = on(0.02, 4, 20.0, (0.25 * shift_s.powi(2) - u_fit_s.powi(2)).sqrt() / 1.2);
         assert_eq!(verdicts[1].answer, Answer::Undecided, "{}", verdicts[1].sentence);
-        assert!((verdicts[1].ratio - 1.0).abs() < 0.1, "{}", verdicts[1].ratio);
+        assert!((verdicts[1].ratio - 1.0).abs() < 0.01, "{}", verdicts[1].ratio);
     }
 }
