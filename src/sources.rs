@@ -45,3 +45,6 @@ pub struct HurvichTsai89;
 /// J. W. Tukey's biweight and the median absolute deviation, as in P. J. Huber, *Robust Statistics* (Wiley 1981). From memory.
 #[derive(Debug)]
 pub struct Huber81;
+/// D. M. Bates, D. G. Watts, "A relative offset orthogonality convergence criterion for nonlinear least squares", *Technometrics* **23**(2), 179–183 (1981). From memory.
+#[derive(Debug)]
+pub struct BatesWatts81;

@@ -124,3 +124,100 @@ pub fn effective_degrees_of_freedom(rows: &[BudgetRow]) -> Option<f64> {
         .sum();
     (sum > 0.0).then(|| combined(rows).powi(4) / sum)
 }
+
+/// Significant digits that a standard uncertainty is given with (GUM 7.2.6: two at most).
+const DIGITS_OF_U: i32 = 2;
+
+/// A value rounded to two significant digits of its standard uncertainty: 1.234567 with u = 0.00012 is `1.23457`.
+///
+/// Both in the same unit; no exponent is used. Where `u` is 0 or not finite there is nothing to round to: six significant digits.
+#[must_use]
+pub fn rounded(value: f64, u: f64) -> String {
+    if !(u.is_finite() && u > 0.0) {
+        return significant(value, 6);
+    }
+    to_decimals(value, DIGITS_OF_U - 1 - exponent_after_rounding(u, DIGITS_OF_U))
+}
+
+/// A value with `digits` ≥ 1 significant digits and no exponent: `significant(0.0123456, 3)` is `0.0123`.
+#[must_use]
+pub fn significant(value: f64, digits: i32) -> String {
+    if value == 0.0 || !value.is_finite() {
+        return value.abs().to_string();
+    }
+    to_decimals(value, digits - 1 - exponent_after_rounding(value, digits))
+}
+
+/// A value with `digits` significant digits and the prefix that puts one to three of them before the point: `12.5 µs`, `3.00 mm`.
+///
+/// * `unit`: a unit that takes prefixes (s, m, N); prefixes from pico to kilo.
+#[must_use]
+pub fn prefixed(value: f64, unit: &str, digits: i32) -> String {
+    const PREFIXES: [(i32, &str); 6] = [(-12, "p"), (-9, "n"), (-6, "µ"), (-3, "m"), (0, ""), (3, "k")];
+    if value == 0.0 || !value.is_finite() {
+        return format!("{} {unit}", value.abs());
+    }
+    let exponent = (exponent_after_rounding(value, digits).div_euclid(3) * 3).clamp(-12, 3);
+    let prefix = PREFIXES.iter().find(|(power, _)| *power == exponent).map_or("", |(_, prefix)| prefix);
+    format!("{} {prefix}{unit}", significant(value * 10_f64.powi(-exponent), digits))
+}
+
+/// Decimal exponent of a value ≠ 0 rounded to `digits` significant digits: −1 for 0.0996 with two, which rounds to 0.10.
+fn exponent_after_rounding(value: f64, digits: i32) -> i32 {
+    let exponent = value.abs().log10().floor();
+    let unit = 10_f64.powf(exponent - f64::from(digits - 1));
+    let rounded_up = (value.abs() / unit).round() * unit >= 10_f64.powf(exponent + 1.0) * (1.0 - f64::EPSILON);
+    #[expect(clippy::cast_possible_truncation, reason = "the exponent of a double is within ±324")]
+    let exponent = exponent as i32;
+    exponent + i32::from(rounded_up)
+}
+
+/// A value with that many decimals; negative ones round to tens, hundreds, …
+fn to_decimals(value: f64, decimals: i32) -> String {
+    let shown = match usize::try_from(decimals) {
+        Ok(decimals) => format!("{value:.decimals$}"),
+        Err(_) => {
+            let unit = 10_f64.powi(-decimals);
+            format!("{:.0}", (value / unit).round() * unit)
+        }
+    };
+    // Rounding −0.001 to two decimals must not leave a sign on zero.
+    if shown.bytes().all(|b| matches!(b, b'-' | b'0' | b'.')) { shown.replace('-', "") } else { shown }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn a_value_shows_two_digits_of_its_uncertainty() {
+        let cases = [
+            (1.234567, 0.00012, "1.23457"),
+            (1.2, 0.0996, "1.20"),
+            (123_456.0, 1200.0, "123500"),
+            (-0.0004, 0.03, "0.000"),
+            (2.5e-5, 1.4e-6, "0.0000250"),
+            (7.0, 0.0, "7.00000"),
+        ];
+        for (value, u, want) in cases {
+            assert_eq!(rounded(value, u), want, "{value} with u = {u}");
+        }
+    }
+
+    #[test]
+    fn a_prefix_puts_one_to_three_digits_before_the_point() {
+        let cases = [(1.25e-5, "s", "12.5 µs"), (9.999e-4, "s", "1.00 ms"), (0.12, "m", "120 mm"), (31.0, "N", "31.0 N"), (0.0, "s", "0 s")];
+        for (value, unit, want) in cases {
+            assert_eq!(prefixed(value, unit, 3), want);
+        }
+    }
+
+    #[test]
+    fn effective_degrees_of_freedom_of_the_guide_come_out() {
+        // GUM G.4.1: relative u 0.25 %, 0.57 %, 0.82 % of a product, with 9, 4 and 14 degrees of freedom: u_c = 1.03 %, ν_eff = 19.0.
+        let row = |u: f64, nu: f64| BudgetRow::new("product", "input", Evaluation::A, u, "%", 1.0).with_degrees_of_freedom(nu);
+        let rows = [row(0.25, 9.0), row(0.57, 4.0), row(0.82, 14.0)];
+        assert!((combined(&rows) - 1.03).abs() < 0.005, "u_c = {}", combined(&rows));
+        assert!(effective_degrees_of_freedom(&rows).is_some_and(|nu| (nu - 19.0).abs() < 0.05));
+    }
+}

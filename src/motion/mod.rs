@@ -2,8 +2,23 @@
 //!
 //! In: [`PositionRecord`]s. Out: a [`MotionFit`], the [`MotionQuantities`] derived from it, and a row per [`Cycle`].
 
+mod cycles;
+mod error;
+mod fit;
+mod guess;
+mod laws;
+pub mod least_squares;
+mod noise;
 mod position;
-mod types;
+mod profile;
+mod quantities;
+mod readings;
+mod robust;
 
+pub use cycles::{Cycle, cycles};
+pub use error::MotionError;
+pub use fit::{MIN_CYCLES, MotionFit, fit};
+pub use laws::LawTrial;
+pub use noise::ResidualDiagnosis;
 pub use position::{PositionRecord, PositionUse};
-pub use types::*;
+pub use quantities::{ExternalTerms, MotionQuantities, quantities};
