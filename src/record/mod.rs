@@ -1,1 +1,30 @@
-//! What leaves the house.
+//! The record: what leaves the house.
+//!
+//! In: a [`Measurement`](crate::measurement::Measurement). Out: a folder that appears whole or not at all, with
+//! `result.json`, `positions.csv`, `cycles.csv`, `report.html`, `streak.png` and `run.toml`; and a short text for the terminal.
+//! The same measurement gives the same bytes.
+
+mod canvas;
+mod error;
+mod facts;
+mod folder;
+mod json;
+mod overlay;
+mod page;
+mod picture;
+mod plots;
+mod quantities;
+mod report;
+mod rounding;
+mod streak;
+mod summary;
+mod tables;
+mod thin;
+
+pub use error::RecordError;
+pub use folder::{check_destination, write};
+pub use json::{result_json, result_json_text};
+pub use report::report_html;
+pub use streak::streak_png;
+pub use summary::summary;
+pub use tables::{cycles_csv, positions_csv};
