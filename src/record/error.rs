@@ -79,6 +79,9 @@ pub enum RecordError {
 impl RecordError {
     /// For `map_err`: a part that could not be made, with the maker's reason.
     pub(super) fn compose<E: std::fmt::Display>(part: &'static str) -> impl Fn(E) -> Self {
-        move |error| Self::Compose { part, reason: error.to_string() }
+        move |error| Self::Compose {
+            part,
+            reason: error.to_string(),
+        }
     }
 }

@@ -21,13 +21,20 @@ pub(super) fn facts_html(measurement: &Measurement) -> String {
     }
     facts.push(("Residuals", residual_words(measurement)));
     facts.push(("SHA-256 of the source", measurement.source_sha256.clone()));
-    let rows: String = facts.iter().map(|(name, words)| format!("<dt>{}</dt><dd>{}</dd>\n", escape(name), escape(words))).collect();
+    let rows: String = facts
+        .iter()
+        .map(|(name, words)| format!("<dt>{}</dt><dd>{}</dd>\n", escape(name), escape(words)))
+        .collect();
     format!("<dl>\n{rows}</dl>\n")
 }
 
 fn film_words(clip: &ClipFacts) -> String {
     let [width, height] = clip.display_size_px;
-    let turn = if clip.rotation_deg == 0 { String::new() } else { format!(", turned by {}° for display", clip.rotation_deg) };
+    let turn = if clip.rotation_deg == 0 {
+        String::new()
+    } else {
+        format!(", turned by {}° for display", clip.rotation_deg)
+    };
     let mirror = if clip.mirrored { ", mirrored" } else { "" };
     format!(
         "{} frames of {width:.0} × {height:.0} px as displayed{turn}{mirror}; {} in {}, {}",
@@ -36,7 +43,7 @@ fn film_words(clip: &ClipFacts) -> String {
 }
 
 fn clock_words(clock: &FrameClock) -> String {
-    let step_us = significant(clock.rounding_step_s * 1e6, 3);
+    let step_us = significant(clock.rounding_step_s * 1e6, 4);
     let interval_ms = significant(clock.interval_s * 1e3, 6);
     let jitter_us = significant(clock.jitter_rms_s * 1e6, 2);
     let kind = if clock.steady {
@@ -45,7 +52,9 @@ fn clock_words(clock: &FrameClock) -> String {
         )
     } else {
         let u_us = significant(clock.u_t_s * 1e6, 2);
-        format!("variable: median interval {interval_ms} ms, stamps rounded to {step_us} µs; the stamps are used, each with u = {u_us} µs")
+        format!(
+            "variable: median interval {interval_ms} ms, stamps rounded to {step_us} µs; the stamps are used, each with u = {u_us} µs"
+        )
     };
     format!(
         "{kind}. Stamps stray from the grid by {jitter_us} µs rms; {} missing from the grid, {} out of order.",
@@ -56,21 +65,35 @@ fn clock_words(clock: &FrameClock) -> String {
 
 fn speed_words(clock: &FrameClock, clip: &ClipFacts) -> String {
     let metadata = match &clip.capture_rate_metadata {
-        Some((rate_hz, key)) => format!("the file names a capture rate of {} Hz ({key})", significant(*rate_hz, 5)),
+        Some((rate_hz, key)) => format!(
+            "the file names a capture rate of {} Hz ({key})",
+            significant(*rate_hz, 5)
+        ),
         None => "the file names no capture rate".to_owned(),
     };
     let as_filmed = (clock.time_scale - 1.0).abs() < 1e-9;
     let scale = if as_filmed {
         "taken as filmed at the speed it plays".to_owned()
     } else {
-        format!("one second of play is {} s of motion", significant(clock.time_scale, 6))
+        format!(
+            "one second of play is {} s of motion",
+            significant(clock.time_scale, 6)
+        )
     };
     format!("{scale}; {metadata}")
 }
 
 fn readings_words(measurement: &Measurement) -> String {
-    let count = |status| measurement.rows.iter().filter(|row| row.status == status).count();
-    let damaged = measurement.film.as_ref().map_or(String::new(), |film| format!(", {} damaged in the file", film.clip.n_damaged));
+    let count = |status| {
+        measurement
+            .rows
+            .iter()
+            .filter(|row| row.status == status)
+            .count()
+    };
+    let damaged = measurement.film.as_ref().map_or(String::new(), |film| {
+        format!(", {} damaged in the file", film.clip.n_damaged)
+    });
     format!(
         "{} in all: {} used, {} lost, {} left out as outliers, {} outside the chosen time{damaged}",
         measurement.rows.len(),
@@ -83,13 +106,24 @@ fn readings_words(measurement: &Measurement) -> String {
 
 fn marker_words(film: &FilmPart) -> String {
     let [left, top, width, height] = film.marker_box_px;
-    let steady = if film.steady_box_px.is_some() { "a steady patch removed the camera's shake" } else { "no steady patch: a shaking camera would show" };
-    format!("box {left:.0}, {top:.0}, {width:.0} × {height:.0} px in frame {}; {steady}", film.at_frame)
+    let steady = if film.steady_box_px.is_some() {
+        "a steady patch removed the camera's shake"
+    } else {
+        "no steady patch: a shaking camera would show"
+    };
+    format!(
+        "box {left:.0}, {top:.0}, {width:.0} × {height:.0} px in frame {}; {steady}",
+        film.at_frame
+    )
 }
 
 fn scale_words(scale: &ScaleAxis) -> String {
     let (length, u_length) = rounded(scale.length_m * 1e3, scale.u_length_m * 1e3);
-    let assumed = if scale.assumed { ", partly assumed" } else { "" };
+    let assumed = if scale.assumed {
+        ", partly assumed"
+    } else {
+        ""
+    };
     format!(
         "{} mm per px from a bar of {length} mm (u = {u_length} mm, each end to {} px{assumed}); u of the scale {}",
         significant(scale.m_per_px * 1e3, 5),
@@ -111,14 +145,14 @@ fn axis_words(scale: &ScaleAxis) -> String {
 fn residual_words(measurement: &Measurement) -> String {
     let residual = &measurement.fit.residual;
     format!(
-        "{} rms. Neighbouring residuals correlate by {:.2}; the variances of the fit are enlarged {} times for it, so that {} readings count as {:.0}. \
-         Runs test: z = {:.1}, p = {}.",
+        "{} rms. Neighbouring residuals correlate by {}; the variances of the fit are enlarged {} times for it, so that {} readings count as {:.0}. \
+         Runs test: z = {}, p = {}.",
         residual_size(measurement),
-        residual.autocorrelation_lag1 + 0.0,
+        significant(residual.autocorrelation_lag1, 2),
         significant(residual.variance_enlargement, 3),
         residual.n_used,
         residual.n_effective,
-        residual.runs_z + 0.0,
+        significant(residual.runs_z, 2),
         significant(residual.runs_p, 2)
     )
 }

@@ -14,7 +14,14 @@ use super::tables::{cycles_csv, positions_csv};
 use crate::measurement::Measurement;
 
 /// Every name a result folder can hold; a folder with anything else in it is not ours to replace.
-const OUR_NAMES: [&str; 6] = ["result.json", "positions.csv", "cycles.csv", "report.html", "streak.png", "run.toml"];
+const OUR_NAMES: [&str; 6] = [
+    "result.json",
+    "positions.csv",
+    "cycles.csv",
+    "report.html",
+    "streak.png",
+    "run.toml",
+];
 
 /// Where the new and the old folder wait while they change places: beside the destination, so that a rename suffices.
 const STAGING_PREFIX: &str = ".ebbmark-";
@@ -64,11 +71,16 @@ fn compose(measurement: &Measurement) -> Result<Vec<Entry>, RecordError> {
 /// The folder a path stands for: links are followed, or the rename would replace the link and leave its target.
 fn resolve(out_dir: &Path) -> Result<PathBuf, RecordError> {
     if fs::symlink_metadata(out_dir).is_ok_and(|facts| facts.is_symlink()) {
-        return fs::canonicalize(out_dir).map_err(|source| RecordError::NotWritable { parent: out_dir.to_owned(), source });
+        return fs::canonicalize(out_dir).map_err(|source| RecordError::NotWritable {
+            parent: out_dir.to_owned(),
+            source,
+        });
     }
     match out_dir.file_name() {
         Some(_) => Ok(out_dir.to_owned()),
-        None => Err(RecordError::NoName { path: out_dir.to_owned() }),
+        None => Err(RecordError::NoName {
+            path: out_dir.to_owned(),
+        }),
     }
 }
 
@@ -82,22 +94,35 @@ fn parent_of(destination: &Path) -> &Path {
 fn refuse_what_is_not_ours(destination: &Path) -> Result<(), RecordError> {
     let parent = parent_of(destination);
     if !parent.is_dir() {
-        return Err(RecordError::ParentMissing { parent: parent.to_owned() });
+        return Err(RecordError::ParentMissing {
+            parent: parent.to_owned(),
+        });
     }
     match fs::metadata(destination) {
         Err(error) if error.kind() == io::ErrorKind::NotFound => Ok(()),
-        Err(source) => Err(RecordError::NotWritable { parent: destination.to_owned(), source }),
+        Err(source) => Err(RecordError::NotWritable {
+            parent: destination.to_owned(),
+            source,
+        }),
         Ok(facts) if facts.is_dir() => match first_stranger(destination)? {
-            Some(stranger) => Err(RecordError::ForeignFolder { path: destination.to_owned(), stranger }),
+            Some(stranger) => Err(RecordError::ForeignFolder {
+                path: destination.to_owned(),
+                stranger,
+            }),
             None => Ok(()),
         },
-        Ok(_) => Err(RecordError::DestinationIsFile { path: destination.to_owned() }),
+        Ok(_) => Err(RecordError::DestinationIsFile {
+            path: destination.to_owned(),
+        }),
     }
 }
 
 /// The alphabetically first entry of a folder that is not a plain file with one of our names.
 fn first_stranger(folder: &Path) -> Result<Option<String>, RecordError> {
-    let refused = |source| RecordError::NotWritable { parent: folder.to_owned(), source };
+    let refused = |source| RecordError::NotWritable {
+        parent: folder.to_owned(),
+        source,
+    };
     let mut strangers = Vec::new();
     for entry in fs::read_dir(folder).map_err(refused)? {
         let entry = entry.map_err(refused)?;
@@ -115,7 +140,10 @@ fn staging_beside(destination: &Path) -> Result<tempfile::TempDir, RecordError> 
     tempfile::Builder::new()
         .prefix(STAGING_PREFIX)
         .tempdir_in(parent)
-        .map_err(|source| RecordError::NotWritable { parent: parent.to_owned(), source })
+        .map_err(|source| RecordError::NotWritable {
+            parent: parent.to_owned(),
+            source,
+        })
 }
 
 /// Writes the entries into a staging folder and lets them take the destination's place.
@@ -123,9 +151,15 @@ fn place(entries: &[Entry], destination: &Path) -> Result<(), RecordError> {
     let staging = staging_beside(destination)?;
     // A folder inside the staging folder: the latter is readable by its owner alone, a result should follow the user's habit.
     let new = staging.path().join("new");
-    fs::create_dir(&new).map_err(|source| RecordError::Write { path: new.clone(), source })?;
+    fs::create_dir(&new).map_err(|source| RecordError::Write {
+        path: new.clone(),
+        source,
+    })?;
     for (name, bytes) in entries {
-        write_file(&new.join(name), bytes).map_err(|source| RecordError::Write { path: destination.join(name), source })?;
+        write_file(&new.join(name), bytes).map_err(|source| RecordError::Write {
+            path: destination.join(name),
+            source,
+        })?;
     }
     exchange(&new, staging, destination)
 }
@@ -139,17 +173,26 @@ fn write_file(path: &Path, bytes: &[u8]) -> io::Result<()> {
 
 /// Old folder out, new folder in. Between the two renames there is no folder; a failure there brings the old one back.
 fn exchange(new: &Path, staging: tempfile::TempDir, destination: &Path) -> Result<(), RecordError> {
-    let refused = |source| RecordError::Replace { path: destination.to_owned(), source };
+    let refused = |source| RecordError::Replace {
+        path: destination.to_owned(),
+        source,
+    };
     let old = staging.path().join("old");
     let had_old = destination.exists();
     if had_old {
         fs::rename(destination, &old).map_err(refused)?;
     }
-    let Err(source) = fs::rename(new, destination) else { return Ok(()) };
+    let Err(source) = fs::rename(new, destination) else {
+        return Ok(());
+    };
     if had_old && fs::rename(&old, destination).is_err() {
         // The staging folder now holds the only copy: it must outlive this run.
         let kept = staging.keep().join("old");
-        return Err(RecordError::Stranded { path: destination.to_owned(), kept, source });
+        return Err(RecordError::Stranded {
+            path: destination.to_owned(),
+            kept,
+            source,
+        });
     }
     Err(refused(source))
 }
@@ -159,7 +202,10 @@ mod tests {
     use super::*;
 
     fn names(folder: &Path) -> Vec<String> {
-        let mut names: Vec<String> = fs::read_dir(folder).unwrap().map(|e| e.unwrap().file_name().into_string().unwrap()).collect();
+        let mut names: Vec<String> = fs::read_dir(folder)
+            .unwrap()
+            .map(|e| e.unwrap().file_name().into_string().unwrap())
+            .collect();
         names.sort();
         names
     }
@@ -170,7 +216,10 @@ mod tests {
         let destination = room.path().join("run.ebbmark");
         place(&[("result.json", b"old".to_vec())], &destination).unwrap();
         // The second name lies in a folder that does not exist, so the write fails half way.
-        let broken = [("result.json", b"new".to_vec()), ("missing/report.html", b"new".to_vec())];
+        let broken = [
+            ("result.json", b"new".to_vec()),
+            ("missing/report.html", b"new".to_vec()),
+        ];
         let error = place(&broken, &destination).unwrap_err();
         assert!(matches!(error, RecordError::Write { .. }), "{error}");
         assert_eq!(fs::read(destination.join("result.json")).unwrap(), b"old");
@@ -183,7 +232,8 @@ mod tests {
         let destination = room.path().join("run.ebbmark");
         place(&[("result.json", b"old".to_vec())], &destination).unwrap();
         let staging = staging_beside(&destination).unwrap();
-        let error = exchange(&staging.path().join("never made"), staging, &destination).unwrap_err();
+        let error =
+            exchange(&staging.path().join("never made"), staging, &destination).unwrap_err();
         assert!(matches!(error, RecordError::Replace { .. }), "{error}");
         assert_eq!(fs::read(destination.join("result.json")).unwrap(), b"old");
         assert_eq!(names(room.path()), ["run.ebbmark"]);

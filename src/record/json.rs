@@ -23,19 +23,37 @@ const SCHEMA: u32 = 1;
 #[must_use]
 pub fn result_json(measurement: &Measurement) -> Value {
     // Taken apart by name, so that a new field breaks the build and not the file format.
-    let Measurement { source_name, source_sha256, sheet_toml, film, rows: _, fit, quantities, cycles: _, energy, verdicts, warnings } = measurement;
+    let Measurement {
+        source_name,
+        source_sha256,
+        sheet_toml,
+        film,
+        rows: _,
+        fit,
+        quantities,
+        cycles: _,
+        energy,
+        verdicts,
+        warnings,
+    } = measurement;
     let film = film.as_ref();
     let mut result = Map::new();
     let mut put = |key: &str, value: Value| {
         result.insert(key.to_owned(), value);
     };
     put("schema", json!(SCHEMA));
-    put("clip", film.map_or_else(|| json!({"file_name": source_name, "sha256": source_sha256}), |film| clip(&film.clip)));
+    put(
+        "clip",
+        film.map_or_else(
+            || json!({"file_name": source_name, "sha256": source_sha256}),
+            |film| clip(&film.clip),
+        ),
+    );
     put("frames", frames(measurement));
     put("scale", film.map_or(Value::Null, |film| scale(&film.scale)));
     put("axis", film.map_or(Value::Null, axis));
-    for entry in named(quantities) {
-        put(entry.key, quantity(entry.quantity));
+    for (words, figure) in named(quantities) {
+        put(words.key, quantity(figure));
     }
     if let Some(energy) = energy {
         put("energy", energies(energy));
@@ -43,9 +61,22 @@ pub fn result_json(measurement: &Measurement) -> Value {
     put("budget", quantities.budget.iter().map(budget_row).collect());
     put("residual", residual(&fit.residual, film));
     put("laws", fit.laws.iter().map(law).collect());
-    put("loss_law", fit.laws.iter().filter(|law| !law.excluded).map(|law| json!(law.law)).collect());
+    put(
+        "loss_law",
+        fit.laws
+            .iter()
+            .filter(|law| !law.excluded)
+            .map(|law| json!(law.law))
+            .collect(),
+    );
     put("verdicts", verdicts.iter().map(verdict).collect());
-    put("warnings", warnings.iter().map(|warning| json!({"key": warning.key, "sentence": warning.sentence})).collect());
+    put(
+        "warnings",
+        warnings
+            .iter()
+            .map(|warning| json!({"key": warning.key, "sentence": warning.sentence}))
+            .collect(),
+    );
     put(
         "provenance",
         json!({"program": "ebbmark", "version": env!("CARGO_PKG_VERSION"), "clip_sha256": source_sha256, "sheet": sheet_toml}),
@@ -73,7 +104,12 @@ fn numbers(values: &[f64]) -> Value {
 }
 
 fn quantity(quantity: &Quantity) -> Value {
-    let Quantity { value, u, unit, interval95: [low, high] } = quantity;
+    let Quantity {
+        value,
+        u,
+        unit,
+        interval95: [low, high],
+    } = quantity;
     json!({"value": optional(*value), "u": optional(*u), "unit": unit, "interval95": [optional(*low), optional(*high)]})
 }
 
@@ -111,7 +147,13 @@ fn clip(clip: &ClipFacts) -> Value {
 }
 
 fn frames(measurement: &Measurement) -> Value {
-    let count = |status| measurement.rows.iter().filter(|row| row.status == status).count();
+    let count = |status| {
+        measurement
+            .rows
+            .iter()
+            .filter(|row| row.status == status)
+            .count()
+    };
     let film = measurement.film.as_ref();
     json!({
         "n_frames": film.map_or(measurement.rows.len(), |film| film.clip.n_frames),
@@ -125,7 +167,17 @@ fn frames(measurement: &Measurement) -> Value {
 }
 
 fn frame_clock(clock: &FrameClock) -> Value {
-    let FrameClock { steady, interval_s, tick_s, rounding_step_s, jitter_rms_s, n_dropped, n_repeated, u_t_s, time_scale } = clock;
+    let FrameClock {
+        steady,
+        interval_s,
+        tick_s,
+        rounding_step_s,
+        jitter_rms_s,
+        n_dropped,
+        n_repeated,
+        u_t_s,
+        time_scale,
+    } = clock;
     json!({
         "steady": steady,
         "interval_s": number(*interval_s),
@@ -164,7 +216,13 @@ fn axis(film: &FilmPart) -> Value {
 }
 
 fn energies(energy: &EnergyFigures) -> Value {
-    let EnergyFigures { mass_kg, u_mass_kg, stiffness, energy_at_start, energy_lost_first_cycle } = energy;
+    let EnergyFigures {
+        mass_kg,
+        u_mass_kg,
+        stiffness,
+        energy_at_start,
+        energy_lost_first_cycle,
+    } = energy;
     json!({
         "mass": {"value": number(*mass_kg), "u": optional(*u_mass_kg), "unit": "kg"},
         "stiffness": quantity(stiffness),
@@ -174,7 +232,17 @@ fn energies(energy: &EnergyFigures) -> Value {
 }
 
 fn budget_row(row: &BudgetRow) -> Value {
-    let BudgetRow { quantity, source, evaluation, u, unit, sensitivity, contribution, degrees_of_freedom, assumed } = row;
+    let BudgetRow {
+        quantity,
+        source,
+        evaluation,
+        u,
+        unit,
+        sensitivity,
+        contribution,
+        degrees_of_freedom,
+        assumed,
+    } = row;
     json!({
         "quantity": quantity,
         "source": source,
@@ -197,7 +265,15 @@ pub(super) fn evaluation_letter(evaluation: Evaluation) -> &'static str {
 }
 
 fn residual(residual: &ResidualDiagnosis, film: Option<&FilmPart>) -> Value {
-    let ResidualDiagnosis { rms_m, autocorrelation_lag1, variance_enlargement, n_used, n_effective, runs_z, runs_p } = residual;
+    let ResidualDiagnosis {
+        rms_m,
+        autocorrelation_lag1,
+        variance_enlargement,
+        n_used,
+        n_effective,
+        runs_z,
+        runs_p,
+    } = residual;
     json!({
         "rms_m": number(*rms_m),
         "rms_px": optional(film.map(|film| rms_m / film.scale.m_per_px)),
@@ -210,7 +286,14 @@ fn residual(residual: &ResidualDiagnosis, film: Option<&FilmPart>) -> Value {
 }
 
 fn law(trial: &LawTrial) -> Value {
-    let LawTrial { law, parameters, rms_m, aicc, excluded, reason } = trial;
+    let LawTrial {
+        law,
+        parameters,
+        rms_m,
+        aicc,
+        excluded,
+        reason,
+    } = trial;
     let parameters: Value = parameters
         .iter()
         .map(|(name, value, u, unit)| json!({"name": name, "value": number(*value), "u": optional(*u), "unit": unit}))
@@ -219,7 +302,14 @@ fn law(trial: &LawTrial) -> Value {
 }
 
 fn verdict(verdict: &Verdict) -> Value {
-    let Verdict { question, asked, answer, ratio, ratio_of, sentence } = verdict;
+    let Verdict {
+        question,
+        asked,
+        answer,
+        ratio,
+        ratio_of,
+        sentence,
+    } = verdict;
     json!({
         "question": question,
         "asked": asked,

@@ -4,11 +4,16 @@
 //! `result.json`, `positions.csv`, `cycles.csv`, `report.html`, `streak.png` and `run.toml`; and a short text for the terminal.
 //! The same measurement gives the same bytes.
 
+mod axis;
+mod brush;
+mod budget;
 mod canvas;
 mod error;
 mod facts;
 mod folder;
+mod illustrations;
 mod json;
+mod laws;
 mod overlay;
 mod page;
 mod picture;
@@ -16,7 +21,9 @@ mod plots;
 mod quantities;
 mod report;
 mod rounding;
+mod shown;
 mod streak;
+mod stretch;
 mod summary;
 mod tables;
 mod thin;

@@ -32,7 +32,14 @@ pub(super) fn page(title: &str, body_html: &str) -> String {
 
 /// A section under a second-level heading; nothing where its body is empty.
 pub(super) fn section(heading: &str, body_html: &str) -> String {
-    if body_html.is_empty() { String::new() } else { format!("<section>\n<h2>{}</h2>\n{body_html}</section>\n", escape(heading)) }
+    if body_html.is_empty() {
+        String::new()
+    } else {
+        format!(
+            "<section>\n<h2>{}</h2>\n{body_html}</section>\n",
+            escape(heading)
+        )
+    }
 }
 
 /// A paragraph.
@@ -43,10 +50,16 @@ pub(super) fn paragraph(text: &str) -> String {
 /// A picture or plot with its caption; `name` is what a screen reader says, as title of an SVG.
 pub(super) fn figure(name: &str, content_html: &str, caption: &str) -> String {
     let titled = match content_html.split_once('>') {
-        Some((root, rest)) if root.starts_with("<svg") => format!("{root} aria-label=\"{0}\"><title>{0}</title>{rest}", escape(name)),
+        Some((root, rest)) if root.starts_with("<svg") => format!(
+            "{root} aria-label=\"{0}\"><title>{0}</title>{rest}",
+            escape(name)
+        ),
         _ => content_html.to_owned(),
     };
-    format!("<figure>\n{titled}\n<figcaption>{}</figcaption>\n</figure>\n", escape(caption))
+    format!(
+        "<figure>\n{titled}\n<figcaption>{}</figcaption>\n</figure>\n",
+        escape(caption)
+    )
 }
 
 /// A table whose columns each align left or right.
@@ -69,23 +82,41 @@ pub(super) enum Align {
 impl Table {
     /// An empty table; the caption is read by all and may be empty.
     pub(super) fn new(caption: &str, columns: &[(&'static str, Align)]) -> Self {
-        Self { caption: caption.to_owned(), columns: columns.to_vec(), rows_html: String::new() }
+        Self {
+            caption: caption.to_owned(),
+            columns: columns.to_vec(),
+            rows_html: String::new(),
+        }
     }
 
     /// A row of text cells, the first of which names the row.
     pub(super) fn row(&mut self, cells: &[&str]) {
         self.rows_html.push_str("<tr>");
         for (i, (cell, (_, align))) in cells.iter().zip(&self.columns).enumerate() {
-            let (open, close) = if i == 0 { ("th scope=\"row\"", "th") } else { ("td", "td") };
-            self.rows_html.push_str(&format!("<{open}{}>{}</{close}>", align.class(), escape(cell)));
+            let (open, close) = if i == 0 {
+                ("th scope=\"row\"", "th")
+            } else {
+                ("td", "td")
+            };
+            self.rows_html.push_str(&format!(
+                "<{open}{}>{}</{close}>",
+                align.class(),
+                escape(cell)
+            ));
         }
         self.rows_html.push_str("</tr>\n");
     }
 
-    /// A line across the table that heads the rows after it.
+    /// A line across the table that heads the rows after it; a page break does not part it from them.
     pub(super) fn group(&mut self, heading: &str) {
         let n = self.columns.len();
-        self.rows_html.push_str(&format!("<tr class=\"group\"><th colspan=\"{n}\" scope=\"colgroup\">{}</th></tr>\n", escape(heading)));
+        if !self.rows_html.is_empty() {
+            self.rows_html.push_str("</tbody>\n<tbody>\n");
+        }
+        self.rows_html.push_str(&format!(
+            "<tr class=\"group\"><th colspan=\"{n}\" scope=\"colgroup\">{}</th></tr>\n",
+            escape(heading)
+        ));
     }
 
     /// The table; nothing where it has no rows.
@@ -93,10 +124,22 @@ impl Table {
         if self.rows_html.is_empty() {
             return String::new();
         }
-        let head: String =
-            self.columns.iter().map(|(name, align)| format!("<th scope=\"col\"{}>{}</th>", align.class(), escape(name))).collect();
-        let caption = if self.caption.is_empty() { String::new() } else { format!("<caption>{}</caption>\n", escape(&self.caption)) };
-        format!("<div class=\"wide\"><table>\n{caption}<thead><tr>{head}</tr></thead>\n<tbody>\n{}</tbody>\n</table></div>\n", self.rows_html)
+        let head: String = self
+            .columns
+            .iter()
+            .map(|(name, align)| {
+                format!("<th scope=\"col\"{}>{}</th>", align.class(), escape(name))
+            })
+            .collect();
+        let caption = if self.caption.is_empty() {
+            String::new()
+        } else {
+            format!("<caption>{}</caption>\n", escape(&self.caption))
+        };
+        format!(
+            "<div class=\"wide\"><table>\n{caption}<thead><tr>{head}</tr></thead>\n<tbody>\n{}</tbody>\n</table></div>\n",
+            self.rows_html
+        )
     }
 }
 
@@ -115,11 +158,18 @@ mod tests {
 
     #[test]
     fn nothing_a_user_writes_becomes_markup() {
-        assert_eq!(escape("<a href=\"x\">'&'"), "&lt;a href=&quot;x&quot;&gt;&#39;&amp;&#39;");
+        assert_eq!(
+            escape("<a href=\"x\">'&'"),
+            "&lt;a href=&quot;x&quot;&gt;&#39;&amp;&#39;"
+        );
         assert_eq!(escape("a\u{0}b\nc"), "a\u{fffd}b\nc");
         let mut table = Table::new("<i>", &[("x", Align::Left)]);
         table.row(&["<b>"]);
-        assert!(!table.html().contains("<b>") && !table.html().contains("<i>"), "{}", table.html());
+        assert!(
+            !table.html().contains("<b>") && !table.html().contains("<i>"),
+            "{}",
+            table.html()
+        );
     }
 
     #[test]

@@ -5,8 +5,9 @@
 use crate::motion::MotionQuantities;
 use crate::uncertainty::Quantity;
 
-/// A quantity with its names.
-pub(super) struct Named<'a> {
+/// How a quantity is called.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) struct Words {
     /// Key in `result.json` and in the budget.
     pub(super) key: &'static str,
     /// Name in the field's words.
@@ -17,12 +18,88 @@ pub(super) struct Named<'a> {
     pub(super) meaning: &'static str,
     /// Whether a report shows it in per cent.
     pub(super) percent: bool,
-    /// The figure.
-    pub(super) quantity: &'a Quantity,
 }
 
-/// The quantities in the order every file lists them.
-pub(super) fn named(quantities: &MotionQuantities) -> [Named<'_>; 11] {
+const PERIOD: Words = Words {
+    key: "period",
+    title: "Period",
+    symbol: "T",
+    meaning: "Time of one full swing, there and back, of the motion as filmed.",
+    percent: false,
+};
+const DAMPED_ANGULAR_FREQUENCY: Words = Words {
+    key: "damped_angular_frequency",
+    title: "Angular frequency",
+    symbol: "ω",
+    meaning: "2π over the period: the phase that the motion runs through in a second.",
+    percent: false,
+};
+const UNDAMPED_PERIOD: Words = Words {
+    key: "undamped_period",
+    title: "Period without loss",
+    symbol: "T₀",
+    meaning: "The period the same mass and spring would have if nothing took energy away (viscous law): T₀ = 2π/√(ω² + γ²).",
+    percent: false,
+};
+const DECAY_RATE: Words = Words {
+    key: "decay_rate",
+    title: "Decay rate",
+    symbol: "γ",
+    meaning: "The amplitude falls as e^(−γt). Twice γ is the rate at which the energy falls.",
+    percent: false,
+};
+const DAMPING_RATIO: Words = Words {
+    key: "damping_ratio",
+    title: "Damping ratio",
+    symbol: "ζ",
+    meaning: "Loss against the loss at which the mass would only creep back: ζ = γ/√(ω² + γ²).",
+    percent: false,
+};
+const LOG_DECREMENT: Words = Words {
+    key: "log_decrement",
+    title: "Logarithmic decrement",
+    symbol: "δ",
+    meaning: "Natural logarithm of the ratio of two amplitudes one period apart: δ = γT.",
+    percent: false,
+};
+const QUALITY_FACTOR: Words = Words {
+    key: "quality_factor",
+    title: "Quality factor",
+    symbol: "Q",
+    meaning: "1/(2ζ): about π times the number of swings in which the amplitude falls to 37 %. High means little loss.",
+    percent: false,
+};
+const ENERGY_LOSS_PER_CYCLE: Words = Words {
+    key: "energy_loss_per_cycle",
+    title: "Energy lost per cycle",
+    symbol: "1 − e^(−2δ)",
+    meaning: "The part of the energy that one swing takes away.",
+    percent: true,
+};
+const AMPLITUDE: Words = Words {
+    key: "amplitude",
+    title: "Amplitude at the start",
+    symbol: "A",
+    meaning: "Largest distance from the centre, at the first reading used.",
+    percent: false,
+};
+const HALF_LIFE: Words = Words {
+    key: "half_life",
+    title: "Half-life of the amplitude",
+    symbol: "t½",
+    meaning: "Time in which the amplitude halves: ln 2/γ.",
+    percent: false,
+};
+const CENTRE: Words = Words {
+    key: "centre",
+    title: "Centre of the motion",
+    symbol: "c",
+    meaning: "Rest position on the motion axis, counted from the axis origin.",
+    percent: false,
+};
+
+/// The quantities with their words, in the order every file lists them.
+pub(super) fn named(quantities: &MotionQuantities) -> [(Words, &Quantity); 11] {
     // Taken apart by name, so that a new field breaks the build and not the file format.
     let MotionQuantities {
         period,
@@ -38,68 +115,27 @@ pub(super) fn named(quantities: &MotionQuantities) -> [Named<'_>; 11] {
         centre,
         budget: _,
     } = quantities;
-    let entry = |key, title, symbol, meaning, quantity| Named { key, title, symbol, meaning, percent: false, quantity };
     [
-        entry("period", "Period", "T", "Time of one full swing, there and back, of the motion as filmed.", period),
-        entry(
-            "damped_angular_frequency",
-            "Angular frequency",
-            "ω",
-            "2π over the period: the phase that the motion runs through in a second.",
-            damped_angular_frequency,
-        ),
-        entry(
-            "undamped_period",
-            "Period without loss",
-            "T₀",
-            "The period the same mass and spring would have if nothing took energy away (viscous law): T₀ = 2π/√(ω² + γ²).",
-            undamped_period,
-        ),
-        entry(
-            "decay_rate",
-            "Decay rate",
-            "γ",
-            "The amplitude falls as e^(−γt). Twice γ is the rate at which the energy falls.",
-            decay_rate,
-        ),
-        entry(
-            "damping_ratio",
-            "Damping ratio",
-            "ζ",
-            "Loss against the loss at which the mass would only creep back: ζ = γ/√(ω² + γ²).",
-            damping_ratio,
-        ),
-        entry(
-            "log_decrement",
-            "Logarithmic decrement",
-            "δ",
-            "Natural logarithm of the ratio of two amplitudes one period apart: δ = γT.",
-            log_decrement,
-        ),
-        entry(
-            "quality_factor",
-            "Quality factor",
-            "Q",
-            "1/(2ζ): about π times the number of swings in which the amplitude falls to 37 %. High means little loss.",
-            quality_factor,
-        ),
-        Named {
-            percent: true,
-            ..entry(
-                "energy_loss_per_cycle",
-                "Energy lost per cycle",
-                "1 − e^(−2δ)",
-                "The part of the energy that one swing takes away.",
-                energy_loss_per_cycle,
-            )
-        },
-        entry("amplitude", "Amplitude at the start", "A", "Largest distance from the centre, at the first reading used.", amplitude),
-        entry("half_life", "Half-life of the amplitude", "t½", "Time in which the amplitude halves: ln 2/γ.", half_life),
-        entry("centre", "Centre of the motion", "c", "Rest position on the motion axis, counted from the axis origin.", centre),
+        (PERIOD, period),
+        (DAMPED_ANGULAR_FREQUENCY, damped_angular_frequency),
+        (UNDAMPED_PERIOD, undamped_period),
+        (DECAY_RATE, decay_rate),
+        (DAMPING_RATIO, damping_ratio),
+        (LOG_DECREMENT, log_decrement),
+        (QUALITY_FACTOR, quality_factor),
+        (ENERGY_LOSS_PER_CYCLE, energy_loss_per_cycle),
+        (AMPLITUDE, amplitude),
+        (HALF_LIFE, half_life),
+        (CENTRE, centre),
     ]
 }
 
-/// The name of the quantity with a key; the key itself where it is not one of ours.
-pub(super) fn title_of<'a>(quantities: &MotionQuantities, key: &'a str) -> &'a str {
-    named(quantities).iter().find(|entry| entry.key == key).map_or(key, |entry| entry.title)
+/// The words of the quantity with a key, and its unit; `None` where the key is not one of ours.
+pub(super) fn find<'a>(
+    quantities: &'a MotionQuantities,
+    key: &str,
+) -> Option<(Words, &'a Quantity)> {
+    named(quantities)
+        .into_iter()
+        .find(|(words, _)| words.key == key)
 }

@@ -18,8 +18,20 @@ const RATIO_DECIMALS: usize = 7;
 /// Energies on a bench are millijoules; 10⁻¹² J leaves nine digits of one.
 const ENERGY_DECIMALS: usize = 12;
 
-const POSITION_HEADER: [&str; 12] =
-    ["frame", "t_s", "u_t_s", "x_m", "u_x_m", "off_axis_m", "x_px", "y_px", "match", "status", "fit_m", "residual_m"];
+const POSITION_HEADER: [&str; 12] = [
+    "frame",
+    "t_s",
+    "u_t_s",
+    "x_m",
+    "u_x_m",
+    "off_axis_m",
+    "x_px",
+    "y_px",
+    "match",
+    "status",
+    "fit_m",
+    "residual_m",
+];
 
 const CYCLE_HEADER: [&str; 10] = [
     "cycle",
@@ -41,9 +53,13 @@ const CYCLE_HEADER: [&str; 10] = [
 pub fn positions_csv(measurement: &Measurement) -> Result<Vec<u8>, RecordError> {
     const PART: &str = "positions.csv";
     let mut table = table();
-    table.write_record(POSITION_HEADER).map_err(RecordError::compose(PART))?;
+    table
+        .write_record(POSITION_HEADER)
+        .map_err(RecordError::compose(PART))?;
     for row in &measurement.rows {
-        table.write_record(position_fields(row)).map_err(RecordError::compose(PART))?;
+        table
+            .write_record(position_fields(row))
+            .map_err(RecordError::compose(PART))?;
     }
     table.into_inner().map_err(RecordError::compose(PART))
 }
@@ -60,14 +76,21 @@ pub fn cycles_csv(measurement: &Measurement) -> Result<Vec<u8>, RecordError> {
     if energy.is_some() {
         header.extend(["energy_j", "u_energy_j"]);
     }
-    table.write_record(header).map_err(RecordError::compose(PART))?;
+    table
+        .write_record(header)
+        .map_err(RecordError::compose(PART))?;
     for cycle in &measurement.cycles {
         let mut fields = cycle_fields(cycle).to_vec();
         if let Some(energy) = energy {
             let (joule, u_joule) = cycle_energy(cycle, energy);
-            fields.extend([field(joule, ENERGY_DECIMALS), field(u_joule, ENERGY_DECIMALS)]);
+            fields.extend([
+                field(joule, ENERGY_DECIMALS),
+                field(u_joule, ENERGY_DECIMALS),
+            ]);
         }
-        table.write_record(fields).map_err(RecordError::compose(PART))?;
+        table
+            .write_record(fields)
+            .map_err(RecordError::compose(PART))?;
     }
     table.into_inner().map_err(RecordError::compose(PART))
 }
@@ -76,7 +99,9 @@ pub fn cycles_csv(measurement: &Measurement) -> Result<Vec<u8>, RecordError> {
 ///
 /// The amplitude's and the stiffness's uncertainties are taken as independent: they share only the scale-free period.
 pub(super) fn cycle_energy(cycle: &Cycle, energy: &EnergyFigures) -> (Option<f64>, Option<f64>) {
-    let (Some(amplitude_m), Some(stiffness)) = (cycle.amplitude_m, energy.stiffness.value) else { return (None, None) };
+    let (Some(amplitude_m), Some(stiffness)) = (cycle.amplitude_m, energy.stiffness.value) else {
+        return (None, None);
+    };
     let joule = 0.5 * stiffness * amplitude_m * amplitude_m;
     let u_joule = cycle.u_amplitude_m.map(|u_m| {
         let from_stiffness = 0.5 * energy.stiffness.u.unwrap_or(0.0) * amplitude_m * amplitude_m;
@@ -86,7 +111,9 @@ pub(super) fn cycle_energy(cycle: &Cycle, energy: &EnergyFigures) -> (Option<f64
 }
 
 fn table() -> Writer<Vec<u8>> {
-    WriterBuilder::new().terminator(Terminator::CRLF).from_writer(Vec::new())
+    WriterBuilder::new()
+        .terminator(Terminator::CRLF)
+        .from_writer(Vec::new())
 }
 
 fn field(value: Option<f64>, decimals: usize) -> String {
@@ -94,7 +121,19 @@ fn field(value: Option<f64>, decimals: usize) -> String {
 }
 
 fn position_fields(row: &RecordRow) -> [String; 12] {
-    let RecordRow { frame, t_s, u_t_s, x_m, u_x_m, off_axis_m, p_px, match_score, status, fit_m, residual_m } = row;
+    let RecordRow {
+        frame,
+        t_s,
+        u_t_s,
+        x_m,
+        u_x_m,
+        off_axis_m,
+        p_px,
+        match_score,
+        status,
+        fit_m,
+        residual_m,
+    } = row;
     [
         frame.to_string(),
         fixed(*t_s, TIME_DECIMALS),

@@ -3,8 +3,12 @@
 use std::f64::consts::{PI, TAU};
 
 use ebbmark::footage::{ClipFacts, FrameClock};
-use ebbmark::measurement::{EnergyFigures, FilmPart, Measurement, RecordRow, RowStatus, ScaleAxis, Still, Streak, Warning};
-use ebbmark::motion::{Cycle, LawTrial, MotionFit, MotionQuantities, PositionUse, ResidualDiagnosis};
+use ebbmark::measurement::{
+    EnergyFigures, FilmPart, Measurement, RecordRow, RowStatus, ScaleAxis, Still, Streak, Warning,
+};
+use ebbmark::motion::{
+    Cycle, LawTrial, MotionFit, MotionQuantities, PositionUse, ResidualDiagnosis,
+};
 use ebbmark::uncertainty::{BudgetRow, Evaluation, Quantity};
 use ebbmark::verdict::{Answer, Verdict};
 use rand::SeedableRng as _;
@@ -32,23 +36,43 @@ pub(crate) struct Double {
 
 impl Double {
     pub(crate) fn film(n_frames: usize) -> Self {
-        Self { n_frames, film: true, mass: false, open_bounds: false, upright: false, name: "rail-long-springs.mov".to_owned() }
+        Self {
+            n_frames,
+            film: true,
+            mass: false,
+            open_bounds: false,
+            upright: false,
+            name: "rail-long-springs.mov".to_owned(),
+        }
     }
     pub(crate) fn table(n_rows: usize) -> Self {
-        Self { film: false, name: "positions.csv".to_owned(), ..Self::film(n_rows) }
+        Self {
+            film: false,
+            name: "positions.csv".to_owned(),
+            ..Self::film(n_rows)
+        }
     }
     pub(crate) fn with_mass(self) -> Self {
         Self { mass: true, ..self }
     }
     /// Loss so small that Q and the half-life are only bounded.
     pub(crate) fn with_open_bounds(self) -> Self {
-        Self { open_bounds: true, ..self }
+        Self {
+            open_bounds: true,
+            ..self
+        }
     }
     pub(crate) fn upright(self) -> Self {
-        Self { upright: true, ..self }
+        Self {
+            upright: true,
+            ..self
+        }
     }
     pub(crate) fn named(self, name: &str) -> Self {
-        Self { name: name.to_owned(), ..self }
+        Self {
+            name: name.to_owned(),
+            ..self
+        }
     }
 
     pub(crate) fn build(&self) -> Measurement {
@@ -73,7 +97,11 @@ impl Double {
     }
 
     fn decay_per_s(&self) -> f64 {
-        if self.open_bounds { 0.000_02 } else { DECAY_PER_S }
+        if self.open_bounds {
+            0.000_02
+        } else {
+            DECAY_PER_S
+        }
     }
 
     fn fit(&self) -> MotionFit {
@@ -179,7 +207,8 @@ impl Double {
         FilmPart {
             clip: ClipFacts {
                 file_name: self.name.clone(),
-                sha256: "9f2b5c0e7d1a4f638b0c2d5e8a7f6134c9e0d1b2a3f4056789abcdef01234567".to_owned(),
+                sha256: "9f2b5c0e7d1a4f638b0c2d5e8a7f6134c9e0d1b2a3f4056789abcdef01234567"
+                    .to_owned(),
                 container: "mov,mp4,m4a,3gp,3g2,mj2".to_owned(),
                 codec: "hevc".to_owned(),
                 pixel_format: "yuv420p".to_owned(),
@@ -205,7 +234,12 @@ impl Double {
                 time_scale: 1.0,
             },
             scale: self.scale_axis(),
-            marker_box_px: [centre_px[0].round() - 12.0, centre_px[1].round() - 12.0, 24.0, 24.0],
+            marker_box_px: [
+                centre_px[0].round() - 12.0,
+                centre_px[1].round() - 12.0,
+                24.0,
+                24.0,
+            ],
             at_frame: 30,
             steady_box_px: Some([40.0, 30.0, 48.0, 48.0]),
             still: still(width, height, centre_px),
@@ -220,9 +254,19 @@ impl Double {
         let omega0 = omega.hypot(gamma);
         let delta = gamma * PERIOD_S;
         let u_rel = 3.1e-5 / gamma;
-        let lossy = |value: f64, unit: &'static str| Quantity::symmetric(value, value * u_rel, 1.96, unit);
+        let lossy =
+            |value: f64, unit: &'static str| Quantity::symmetric(value, value * u_rel, 1.96, unit);
         let bounded = |value: f64, unit: &'static str| {
-            if self.open_bounds { Quantity { value: None, u: None, unit, interval95: [Some(0.43 * value), None] } } else { lossy(value, unit) }
+            if self.open_bounds {
+                Quantity {
+                    value: None,
+                    u: None,
+                    unit,
+                    interval95: [Some(0.43 * value), None],
+                }
+            } else {
+                lossy(value, unit)
+            }
         };
         MotionQuantities {
             period: Quantity::symmetric(PERIOD_S, 3.5e-5, 1.96, "s"),
@@ -241,7 +285,11 @@ impl Double {
     }
 
     fn verdicts(&self) -> Vec<Verdict> {
-        let present = if self.open_bounds { Answer::Undecided } else { Answer::Yes };
+        let present = if self.open_bounds {
+            Answer::Undecided
+        } else {
+            Answer::Yes
+        };
         vec![
             Verdict {
                 question: "loss_present",
@@ -297,17 +345,20 @@ fn noise() -> impl FnMut() -> f64 {
 
 fn cycles(fit: &MotionFit) -> Vec<Cycle> {
     let mut noise = noise();
-    let n = ((fit.t_end_s - fit.t_ref_s) / PERIOD_S) as usize;
+    let n = (1..)
+        .take_while(|&n| f64::from(n) * PERIOD_S < fit.t_end_s - fit.t_ref_s)
+        .last()
+        .unwrap_or(0);
     let first_s = fit.t_ref_s + (1.5 * PI - fit.phase_rad) / fit.damped_angular_frequency_rad_per_s;
     let mut last: Option<f64> = None;
     (1..n)
         .map(|index| {
-            let start_s = first_s + (index - 1) as f64 * PERIOD_S;
+            let start_s = first_s + f64::from(index - 1) * PERIOD_S;
             let amplitude_m = fit.envelope_m(start_s + 0.5 * PERIOD_S) + 0.3 * noise();
             let energy_ratio = last.map(|last| (amplitude_m / last).powi(2));
             last = Some(amplitude_m);
             Cycle {
-                index,
+                index: usize::try_from(index).unwrap(),
                 start_s,
                 period_crossings_s: PERIOD_S + 2.0 * noise(),
                 u_period_crossings_s: 2.0 * NOISE_M,
@@ -316,21 +367,53 @@ fn cycles(fit: &MotionFit) -> Vec<Cycle> {
                 amplitude_m: Some(amplitude_m),
                 u_amplitude_m: Some(0.3 * NOISE_M),
                 energy_ratio,
-                u_energy_ratio: energy_ratio.map(|_| 2.0 * std::f64::consts::SQRT_2 * 0.3 * NOISE_M / AMPLITUDE_M),
+                u_energy_ratio: energy_ratio
+                    .map(|_| 2.0 * std::f64::consts::SQRT_2 * 0.3 * NOISE_M / AMPLITUDE_M),
             }
         })
         .collect()
 }
 
 fn laws() -> Vec<LawTrial> {
-    let law = |law, parameters, rms_m, aicc, excluded, reason: &str| LawTrial { law, parameters, rms_m, aicc, excluded, reason: reason.to_owned() };
+    let law = |law, parameters, rms_m, aicc, excluded, reason: &str| LawTrial {
+        law,
+        parameters,
+        rms_m,
+        aicc,
+        excluded,
+        reason: reason.to_owned(),
+    };
     vec![
-        law("none", vec![], 0.004_1, -9_011.0, true, "Its misfit is 340 times that of viscous loss (F = 1.2·10⁵)."),
-        law("viscous", vec![("gamma", DECAY_PER_S, Some(3.1e-5), "s-1")], 0.000_012, -31_420.0, false, "Fits to the noise."),
-        law("dry", vec![("step", 0.000_64, Some(0.000_002), "m")], 0.000_71, -18_330.0, true, "Its straight envelope misses by 0.7 mm."),
+        law(
+            "none",
+            vec![],
+            0.004_1,
+            -9_011.0,
+            true,
+            "Its misfit is 340 times that of viscous loss (F = 1.2·10⁵).",
+        ),
+        law(
+            "viscous",
+            vec![("gamma", DECAY_PER_S, Some(3.1e-5), "s-1")],
+            0.000_012,
+            -31_420.0,
+            false,
+            "Fits to the noise.",
+        ),
+        law(
+            "dry",
+            vec![("step", 0.000_64, Some(0.000_002), "m")],
+            0.000_71,
+            -18_330.0,
+            true,
+            "Its straight envelope misses by 0.7 mm.",
+        ),
         law(
             "viscous_dry",
-            vec![("gamma", DECAY_PER_S, Some(5.2e-5), "s-1"), ("step", 0.000_000_4, Some(0.000_001_1), "m")],
+            vec![
+                ("gamma", DECAY_PER_S, Some(5.2e-5), "s-1"),
+                ("step", 0.000_000_4, Some(0.000_001_1), "m"),
+            ],
             0.000_012,
             -31_418.6,
             false,
@@ -341,25 +424,88 @@ fn laws() -> Vec<LawTrial> {
 
 fn budget() -> Vec<BudgetRow> {
     vec![
-        BudgetRow::new("period", "clock of the phone", Evaluation::B, 2.887e-5, "1", PERIOD_S).assumed(true),
-        BudgetRow::new("period", "scatter of the readings", Evaluation::A, 1.4e-6, "s", 1.0).with_degrees_of_freedom(412.0),
-        BudgetRow::new("period", "read-out of the sensor", Evaluation::B, 1.1e-6, "s", 1.0).assumed(true),
-        BudgetRow::new("decay_rate", "scatter of the readings", Evaluation::A, 3.1e-5, "s-1", 1.0).with_degrees_of_freedom(412.0),
-        BudgetRow::new("amplitude", "scale bar and its ends", Evaluation::B, 0.002, "1", AMPLITUDE_M).assumed(true),
-        BudgetRow::new("amplitude", "scatter of the readings", Evaluation::A, 1.7e-6, "m", 1.0).with_degrees_of_freedom(412.0),
+        BudgetRow::new(
+            "period",
+            "clock of the phone",
+            Evaluation::B,
+            2.887e-5,
+            "1",
+            PERIOD_S,
+        )
+        .assumed(true),
+        BudgetRow::new(
+            "period",
+            "scatter of the readings",
+            Evaluation::A,
+            1.4e-6,
+            "s",
+            1.0,
+        )
+        .with_degrees_of_freedom(412.0),
+        BudgetRow::new(
+            "period",
+            "read-out of the sensor",
+            Evaluation::B,
+            1.1e-6,
+            "s",
+            1.0,
+        )
+        .assumed(true),
+        BudgetRow::new(
+            "decay_rate",
+            "scatter of the readings",
+            Evaluation::A,
+            3.1e-5,
+            "s-1",
+            1.0,
+        )
+        .with_degrees_of_freedom(412.0),
+        BudgetRow::new(
+            "amplitude",
+            "scale bar and its ends",
+            Evaluation::B,
+            0.002,
+            "1",
+            AMPLITUDE_M,
+        )
+        .assumed(true),
+        BudgetRow::new(
+            "amplitude",
+            "scatter of the readings",
+            Evaluation::A,
+            1.7e-6,
+            "m",
+            1.0,
+        )
+        .with_degrees_of_freedom(412.0),
     ]
 }
 
 fn energy_figures(fit: &MotionFit) -> EnergyFigures {
-    let stiffness = MASS_KG * (fit.damped_angular_frequency_rad_per_s.powi(2) + fit.decay_rate_per_s.powi(2));
+    let stiffness =
+        MASS_KG * (fit.damped_angular_frequency_rad_per_s.powi(2) + fit.decay_rate_per_s.powi(2));
     let energy_j = 0.5 * stiffness * AMPLITUDE_M * AMPLITUDE_M;
     EnergyFigures {
         mass_kg: MASS_KG,
         u_mass_kg: Some(0.000_2),
         stiffness: Quantity::symmetric(stiffness, stiffness * 0.000_8, 1.96, "N/m"),
         energy_at_start: Quantity::symmetric(energy_j, energy_j * 0.004, 1.96, "J"),
-        energy_lost_first_cycle: Quantity::symmetric(0.0294 * energy_j, 0.0294 * energy_j * 0.005, 1.96, "J"),
+        energy_lost_first_cycle: Quantity::symmetric(
+            0.0294 * energy_j,
+            0.0294 * energy_j * 0.005,
+            1.96,
+            "J",
+        ),
     }
+}
+
+#[expect(
+    clippy::cast_possible_truncation,
+    clippy::cast_sign_loss,
+    reason = "clamped on the same line"
+)]
+fn byte(value: f64) -> u8 {
+    value.clamp(0.0, 255.0) as u8
 }
 
 /// A grey room with a rail, a dark glider and a bright marker.
@@ -370,12 +516,21 @@ fn still(width: usize, height: usize, centre_px: [f64; 2]) -> Still {
         for x in 0..width {
             let (dx, dy) = (x as f64 - centre_px[0], y as f64 - centre_px[1]);
             let ground = 70.0 + 60.0 * y as f64 / height as f64 + 25.0 * (x as f64 / 37.0).sin();
-            let glider = if dx.abs() < 34.0 && dy.abs() < 20.0 { 35.0 } else { ground };
+            let glider = if dx.abs() < 34.0 && dy.abs() < 20.0 {
+                35.0
+            } else {
+                ground
+            };
             let marker = 190.0 * (-(dx * dx + dy * dy) / 50.0).exp();
-            luma.push((glider + marker + noise() / NOISE_M * 2.0).clamp(0.0, 255.0) as u8);
+            luma.push(byte(glider + marker + noise() / NOISE_M * 2.0));
         }
     }
-    Still { width, height, luma, display_px_per_px: 1.0 }
+    Still {
+        width,
+        height,
+        luma,
+        display_px_per_px: 1.0,
+    }
 }
 
 /// A blob that follows the rows, dark glider around it, with noise; nothing where it was lost.
@@ -387,9 +542,17 @@ fn streak(rows: &[RecordRow]) -> Streak {
         for sample in 0..width {
             let px = first_px + sample as f64;
             let from_marker = row.x_m.map(|x_m| px - x_m / M_PER_PX);
-            let blob = from_marker.map_or(0.0, |d| 150.0 * (-d * d / 50.0).exp() - if d.abs() < 34.0 { 60.0 } else { 0.0 });
-            lines.push((105.0 + blob + noise() / NOISE_M * 3.0).clamp(0.0, 255.0) as u8);
+            let blob = from_marker.map_or(0.0, |d| {
+                150.0 * (-d * d / 50.0).exp() - if d.abs() < 34.0 { 60.0 } else { 0.0 }
+            });
+            lines.push(byte(105.0 + blob + noise() / NOISE_M * 3.0));
         }
     }
-    Streak { width, lines, t_s: rows.iter().map(|row| row.t_s).collect(), first_px, step_px: 1.0 }
+    Streak {
+        width,
+        lines,
+        t_s: rows.iter().map(|row| row.t_s).collect(),
+        first_px,
+        step_px: 1.0,
+    }
 }
