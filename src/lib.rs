@@ -1,8 +1,9 @@
 //! ebbmark turns a phone clip of a free oscillation into a number that its user can defend.
+pub mod cli;
 pub mod footage;
 pub mod measurement;
 pub mod motion;
-//pub mod record;
+pub mod record;
 pub mod rehearsal;
 pub mod run_sheet;
 pub mod scale;

@@ -50,11 +50,11 @@ pub fn measure(
     let mut rows = film.rows(&run)?;
     let part = fit_rows(&mut rows, &run.fit, Some(film.u_scale_rel()))?;
     let film_part = film.into_part(facts, &run, &rows);
-    Ok(part.into_measurement(
-        sheet.with_source(&film_part.clip.file_name),
+    part.into_measurement(
+        &sheet.with_source(&film_part.clip.file_name),
         Some(film_part),
         rows,
-    ))
+    )
 }
 
 /// The same fit and verdicts from a table of positions and times, whoever made it.
@@ -69,7 +69,7 @@ pub fn refit(table: &Path, sheet: &RunSheet) -> Result<Measurement, MeasureError
     let (mut rows, file_name, sha256) = table::read(table)?;
     film::mark_outside(&mut rows, &run)?;
     let part = fit_rows(&mut rows, &run, None)?;
-    let mut measurement = part.into_measurement(sheet.with_table(&file_name), None, rows);
+    let mut measurement = part.into_measurement(&sheet.with_table(&file_name), None, rows)?;
     measurement.source_sha256 = sha256;
     Ok(measurement)
 }
@@ -139,10 +139,10 @@ fn record(row: &RecordRow) -> Option<PositionRecord> {
 impl FittedPart {
     fn into_measurement(
         self,
-        sheet: RunSheet,
+        sheet: &RunSheet,
         film: Option<FilmPart>,
         rows: Vec<RecordRow>,
-    ) -> Measurement {
+    ) -> Result<Measurement, MeasureError> {
         let Self {
             fit,
             quantities,
@@ -156,7 +156,7 @@ impl FittedPart {
             source_sha256: film
                 .as_ref()
                 .map_or_else(String::new, |film| film.clip.sha256.clone()),
-            sheet,
+            sheet_toml: sheet.to_toml()?,
             film,
             rows,
             fit,
@@ -167,7 +167,7 @@ impl FittedPart {
             warnings: Vec::new(),
         };
         measurement.warnings = warnings::warnings(&measurement, &run);
-        measurement
+        Ok(measurement)
     }
 }
 

@@ -2,6 +2,7 @@
 
 use super::outcome::{Failure, print};
 use super::progress::Progress;
+use super::repeat;
 use crate::measurement::measure;
 use crate::record;
 use crate::run_sheet::RunSheet;
@@ -36,7 +37,7 @@ pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
         let bar = Progress::new(arguments.quiet);
         measure(&clip, &sheet, &mut |done, of| bar.tell(done, of))?
     };
-    record::write(&measurement, &clip, &folder)?;
+    record::write(&measurement, &repeat::film_sheet(&sheet, &clip, &folder)?, &folder)?;
     if arguments.quiet {
         return Ok(());
     }

@@ -3,7 +3,7 @@
 use super::numbers::{four, one};
 use super::outcome::{Failure, print};
 use super::progress::Progress;
-use super::refit;
+use super::{refit, repeat};
 use crate::measurement::{Measurement, measure};
 use crate::record;
 use crate::run_sheet::RunSheet;
@@ -97,22 +97,34 @@ impl OutputArguments {
     /// The folder for the results of a file.
     pub(super) fn folder(&self, source: &Path) -> PathBuf {
         let default = || {
-            let stem = source.file_stem().map_or_else(|| "result".into(), |stem| stem.to_string_lossy().into_owned());
+            let stem = source.file_stem().map_or_else(
+                || "result".into(),
+                |stem| stem.to_string_lossy().into_owned(),
+            );
             PathBuf::from(format!("{stem}.ebbmark"))
         };
         self.out.clone().unwrap_or_else(default)
     }
 
     /// Writes the folder and says what is in it.
-    pub(super) fn deliver(&self, measurement: &Measurement, source: &Path, folder: &Path) -> Result<(), Failure> {
-        record::write(measurement, source, folder)?;
+    pub(super) fn deliver(
+        &self,
+        measurement: &Measurement,
+        run_toml: &str,
+        folder: &Path,
+    ) -> Result<(), Failure> {
+        record::write(measurement, run_toml, folder)?;
         if self.json {
             return print(&record::result_json_text(measurement));
         }
         if self.quiet {
             return Ok(());
         }
-        print(&format!("{}\nReport: {}\n", record::summary(measurement).trim_end(), folder.join("report.html").display()))
+        print(&format!(
+            "{}\nReport: {}\n",
+            record::summary(measurement).trim_end(),
+            folder.join("report.html").display()
+        ))
     }
 }
 
@@ -125,7 +137,10 @@ pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
         return refit::run_on(&table, &sheet, &arguments.output);
     }
     let Some(clip) = &sheet.clip else {
-        return Err(Failure::usage(format!("{}: names no film; give `clip = \"NAME.mp4\"`", arguments.source.display())));
+        return Err(Failure::usage(format!(
+            "{}: names no film; give `clip = \"NAME.mp4\"`",
+            arguments.source.display()
+        )));
     };
     let clip = base.join(clip);
     let folder = arguments.output.folder(&clip);
@@ -134,23 +149,36 @@ pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
         let bar = Progress::new(arguments.output.quiet);
         measure(&clip, &sheet, &mut |done, of| bar.tell(done, of))?
     };
-    arguments.output.deliver(&measurement, &clip, &folder)
+    let run_toml = repeat::film_sheet(&sheet, &clip, &folder)?;
+    arguments.output.deliver(&measurement, &run_toml, &folder)
 }
 
 /// The sheet behind a path: the file itself, or one that names the film; and the folder its paths start from.
 fn sheet_of(source: &Path) -> Result<(RunSheet, PathBuf), Failure> {
-    if source.extension().is_none_or(|extension| !extension.eq_ignore_ascii_case("toml")) {
+    if source
+        .extension()
+        .is_none_or(|extension| !extension.eq_ignore_ascii_case("toml"))
+    {
         let Some(clip) = source.to_str() else {
-            return Err(Failure::input(format!("{}: the file's name is not valid UTF-8; rename the clip", source.display())));
+            return Err(Failure::input(format!(
+                "{}: the file's name is not valid UTF-8; rename the clip",
+                source.display()
+            )));
         };
         return Ok((RunSheet::default().with_source(clip), PathBuf::new()));
     }
     let text = std::fs::read_to_string(source).map_err(|error| {
-        Failure::input(format!("{}: the run sheet cannot be read ({error}); check its name", source.display()))
+        Failure::input(format!(
+            "{}: the run sheet cannot be read ({error}); check its name",
+            source.display()
+        ))
     })?;
-    let sheet =
-        RunSheet::from_toml(&text).map_err(|error| Failure::usage(format!("{}: {error}", source.display())))?;
-    Ok((sheet, source.parent().map(Path::to_path_buf).unwrap_or_default()))
+    let sheet = RunSheet::from_toml(&text)
+        .map_err(|error| Failure::usage(format!("{}: {error}", source.display())))?;
+    Ok((
+        sheet,
+        source.parent().map(Path::to_path_buf).unwrap_or_default(),
+    ))
 }
 
 impl Arguments {

@@ -3,14 +3,15 @@
 //! Arguments pass two layers: what was typed, checked for form only, and then a [`RunSheet`](crate::run_sheet::RunSheet)
 //! that the library takes. Results go to files and a short summary to stdout; a failure is one sentence on stderr.
 
-mod demo;
+//mod demo;
 mod inspect;
 mod measure;
 mod numbers;
 mod outcome;
 mod progress;
 mod refit;
-mod rehearse;
+//mod rehearse;
+mod repeat;
 
 use clap::{CommandFactory, FromArgMatches, Parser, Subcommand};
 use outcome::Failure;
@@ -20,7 +21,12 @@ use std::process::ExitCode;
 /// Turns a phone clip of a free oscillation into a number you can defend: period, damping, Q and energy loss per cycle,
 /// each with an honest uncertainty.
 #[derive(Debug, Parser)]
-#[command(name = "ebbmark", version, arg_required_else_help = true, disable_help_subcommand = true)]
+#[command(
+    name = "ebbmark",
+    version,
+    arg_required_else_help = true,
+    disable_help_subcommand = true
+)]
 struct Arguments {
     #[command(subcommand)]
     verb: Verb,
@@ -34,10 +40,8 @@ enum Verb {
     Inspect(inspect::Arguments),
     /// The same fit and verdicts from a table of positions and times
     Refit(refit::Arguments),
-    /// Make a film with known truth from a scene
-    Rehearse(rehearse::Arguments),
-    /// Do the main job on the clip inside this program
-    Demo(demo::Arguments),
+    //Rehearse(rehearse::Arguments),
+    //Demo(demo::Arguments),
 }
 
 /// Runs one command line and returns its exit code: 0 done, 2 usage, 3 input, 4 not measurable.
@@ -46,8 +50,8 @@ pub fn run(arguments: impl Iterator<Item = OsString>) -> ExitCode {
         Verb::Measure(arguments) => measure::run(&arguments),
         Verb::Inspect(arguments) => inspect::run(&arguments),
         Verb::Refit(arguments) => refit::run(&arguments),
-        Verb::Rehearse(arguments) => rehearse::run(&arguments),
-        Verb::Demo(arguments) => demo::run(&arguments),
+        //Verb::Rehearse(arguments) => rehearse::run(&arguments),
+        //Verb::Demo(arguments) => demo::run(&arguments),
     });
     match outcome {
         Ok(()) => ExitCode::SUCCESS,
@@ -56,6 +60,8 @@ pub fn run(arguments: impl Iterator<Item = OsString>) -> ExitCode {
 }
 
 fn parse(arguments: impl Iterator<Item = OsString>) -> Result<Arguments, Failure> {
-    let matches = Arguments::command().try_get_matches_from(arguments).map_err(Failure::from_clap)?;
+    let matches = Arguments::command()
+        .try_get_matches_from(arguments)
+        .map_err(Failure::from_clap)?;
     Arguments::from_arg_matches(&matches).map_err(Failure::from_clap)
 }

@@ -7,7 +7,9 @@
 pub(super) fn four(text: &str) -> Result<[f64; 4], String> {
     let numbers: Vec<f64> = text.split(',').map(one).collect::<Result<_, _>>()?;
     let n = numbers.len();
-    numbers.try_into().map_err(|_| format!("four numbers with commas between them are needed, and `{text}` has {n}"))
+    numbers.try_into().map_err(|_| {
+        format!("four numbers with commas between them are needed, and `{text}` has {n}")
+    })
 }
 
 /// One number.
@@ -15,7 +17,9 @@ pub(super) fn four(text: &str) -> Result<[f64; 4], String> {
 /// # Errors
 /// A sentence that says what was typed.
 pub(super) fn one(text: &str) -> Result<f64, String> {
-    text.trim().parse().map_err(|_| format!("`{text}` is not a number; write it like 0.5"))
+    text.trim()
+        .parse()
+        .map_err(|_| format!("`{text}` is not a number; write it like 0.5"))
 }
 
 #[cfg(test)]

@@ -1,5 +1,9 @@
 //! How a command ends: a sentence and an exit code.
-#![allow(clippy::print_stdout, clippy::print_stderr, reason = "the command line is where words leave the program")]
+#![allow(
+    clippy::print_stdout,
+    clippy::print_stderr,
+    reason = "the command line is where words leave the program"
+)]
 
 use crate::measurement::{Fault, MeasureError};
 use crate::record::RecordError;
@@ -24,26 +28,40 @@ pub(super) enum Failure {
 
 impl Failure {
     pub(super) fn usage(sentence: impl Into<String>) -> Self {
-        Self::Said { sentence: sentence.into(), code: 2 }
+        Self::Said {
+            sentence: sentence.into(),
+            code: 2,
+        }
     }
 
     pub(super) fn input(sentence: impl Into<String>) -> Self {
-        Self::Said { sentence: sentence.into(), code: 3 }
+        Self::Said {
+            sentence: sentence.into(),
+            code: 3,
+        }
     }
 
     /// The argument parser's page, cut to its first paragraph: one sentence, and where to read on.
     pub(super) fn from_clap(error: clap::Error) -> Self {
-        use clap::error::ErrorKind::{DisplayHelp, DisplayHelpOnMissingArgumentOrSubcommand, DisplayVersion};
+        use clap::error::ErrorKind::{
+            DisplayHelp, DisplayHelpOnMissingArgumentOrSubcommand, DisplayVersion,
+        };
         let text = error.render().to_string();
         match error.kind() {
             DisplayHelp | DisplayVersion => Self::Shown(text),
-            DisplayHelpOnMissingArgumentOrSubcommand => {
-                Self::usage("no verb given; try `ebbmark demo`, or `ebbmark --help` for all of them")
-            }
+            DisplayHelpOnMissingArgumentOrSubcommand => Self::usage(
+                "no verb given; try `ebbmark demo`, or `ebbmark --help` for all of them",
+            ),
             _ => {
                 let first = text.split("\n\n").next().unwrap_or(&text);
-                let sentence = first.trim_start_matches("error: ").split_whitespace().collect::<Vec<_>>().join(" ");
-                Self::usage(format!("{sentence}; see `ebbmark --help` and `ebbmark VERB --help`"))
+                let sentence = first
+                    .trim_start_matches("error: ")
+                    .split_whitespace()
+                    .collect::<Vec<_>>()
+                    .join(" ");
+                Self::usage(format!(
+                    "{sentence}; see `ebbmark --help` and `ebbmark VERB --help`"
+                ))
             }
         }
     }
@@ -72,7 +90,10 @@ impl From<MeasureError> for Failure {
             Fault::Input => 3,
             Fault::NotMeasurable => 4,
         };
-        Self::Said { sentence: error.to_string(), code }
+        Self::Said {
+            sentence: error.to_string(),
+            code,
+        }
     }
 }
 
@@ -85,8 +106,13 @@ impl From<RecordError> for Failure {
 /// Prints to stdout; a closed pipe is a normal end, any other failure is said.
 pub(super) fn print(text: &str) -> Result<(), Failure> {
     let mut stdout = std::io::stdout().lock();
-    stdout.write_all(text.as_bytes()).and_then(|()| stdout.flush()).map_err(|error| match error.kind() {
-        std::io::ErrorKind::BrokenPipe => Failure::PipeClosed,
-        _ => Failure::usage(format!("stdout cannot be written to: {error}; send it elsewhere")),
-    })
+    stdout
+        .write_all(text.as_bytes())
+        .and_then(|()| stdout.flush())
+        .map_err(|error| match error.kind() {
+            std::io::ErrorKind::BrokenPipe => Failure::PipeClosed,
+            _ => Failure::usage(format!(
+                "stdout cannot be written to: {error}; send it elsewhere"
+            )),
+        })
 }

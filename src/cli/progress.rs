@@ -10,9 +10,14 @@ pub(super) struct Progress {
 impl Progress {
     /// A bar, or none at all where `quiet`; the library draws nothing where stderr is no terminal.
     pub(super) fn new(quiet: bool) -> Self {
-        let target = if quiet { ProgressDrawTarget::hidden() } else { ProgressDrawTarget::stderr() };
+        let target = if quiet {
+            ProgressDrawTarget::hidden()
+        } else {
+            ProgressDrawTarget::stderr()
+        };
         let bar = ProgressBar::with_draw_target(None, target);
-        if let Ok(style) = ProgressStyle::with_template("{bar:30} frame {pos} of {len}  {eta} left") {
+        if let Ok(style) = ProgressStyle::with_template("{bar:30} frame {pos} of {len}  {eta} left")
+        {
             bar.set_style(style);
         }
         Self { bar }
@@ -23,7 +28,8 @@ impl Progress {
         if let Some(of) = of {
             self.bar.set_length(u64::try_from(of).unwrap_or(u64::MAX));
         }
-        self.bar.set_position(u64::try_from(done).unwrap_or(u64::MAX));
+        self.bar
+            .set_position(u64::try_from(done).unwrap_or(u64::MAX));
     }
 }
 

@@ -2,6 +2,7 @@
 
 use super::measure::{FitArguments, OutputArguments};
 use super::outcome::Failure;
+use super::repeat;
 use crate::measurement::refit;
 use crate::record;
 use crate::run_sheet::RunSheet;
@@ -27,9 +28,14 @@ pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
 }
 
 /// The same for a table that a run sheet names.
-pub(super) fn run_on(table: &Path, sheet: &RunSheet, output: &OutputArguments) -> Result<(), Failure> {
+pub(super) fn run_on(
+    table: &Path,
+    sheet: &RunSheet,
+    output: &OutputArguments,
+) -> Result<(), Failure> {
     let folder = output.folder(table);
     record::check_destination(&folder)?;
     let measurement = refit(table, sheet)?;
-    output.deliver(&measurement, table, &folder)
+    let run_toml = repeat::table_sheet(sheet, table, &folder)?;
+    output.deliver(&measurement, &run_toml, &folder)
 }

@@ -2,7 +2,6 @@
 
 use crate::footage::{CaptureRate, ClipFacts, FrameClock};
 use crate::motion::{Cycle, MotionFit, MotionQuantities};
-use crate::run_sheet::RunSheet;
 use crate::uncertainty::Quantity;
 use crate::verdict::Verdict;
 
@@ -159,8 +158,9 @@ pub struct Measurement {
     pub source_name: String,
     /// SHA-256 of the clip or table.
     pub source_sha256: String,
-    /// The run sheet; its clip or table is the file's name without a folder, so that results do not depend on where they lie.
-    pub sheet: RunSheet,
+    /// The run sheet as TOML text; its clip or table is the file's name without a folder, so that results do not depend
+    /// on where files lie.
+    pub sheet_toml: String,
     /// What only a film has; None after `refit`.
     pub film: Option<FilmPart>,
     /// The position–time record.

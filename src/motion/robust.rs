@@ -52,19 +52,40 @@ pub(super) fn majority(readings: &Readings, starts: &[Guess]) -> Result<Majority
             Err(error) => failure = error,
         }
     }
-    let smallest = fits.iter().map(|fit| fit.scale).fold(f64::INFINITY, f64::min);
-    let cost = |fit: &Reweighted| fit.normalised.iter().map(|z| (z.abs() / smallest).min(TRUNCATION).powi(2)).sum::<f64>();
-    let best = fits.into_iter().min_by(|a, b| cost(a).total_cmp(&cost(b))).ok_or(failure)?;
+    let smallest = fits
+        .iter()
+        .map(|fit| fit.scale)
+        .fold(f64::INFINITY, f64::min);
+    let cost = |fit: &Reweighted| {
+        fit.normalised
+            .iter()
+            .map(|z| (z.abs() / smallest).min(TRUNCATION).powi(2))
+            .sum::<f64>()
+    };
+    let best = fits
+        .into_iter()
+        .min_by(|a, b| cost(a).total_cmp(&cost(b)))
+        .ok_or(failure)?;
     let n = readings.len() as f64;
     let degrees_of_freedom = n - best.sinusoid.parameters().len() as f64;
     let scale = best.scale * (n / degrees_of_freedom).sqrt();
-    let limit = scale * student_t_quantile(1.0 - 0.5 * FALSE_MARKS_PER_RECORD / n, MAD_EFFICIENCY * degrees_of_freedom);
+    let limit = scale
+        * student_t_quantile(
+            1.0 - 0.5 * FALSE_MARKS_PER_RECORD / n,
+            MAD_EFFICIENCY * degrees_of_freedom,
+        );
     let belongs: Vec<bool> = best.normalised.iter().map(|z| z.abs() <= limit).collect();
     let n_outliers = belongs.iter().filter(|b| !**b).count();
     if 3 * n_outliers > readings.len() {
-        return Err(MotionError::TooManyOutliers { n_outliers, n_positions: readings.len() });
+        return Err(MotionError::TooManyOutliers {
+            n_outliers,
+            n_positions: readings.len(),
+        });
     }
-    Ok(Majority { sinusoid: best.sinusoid, belongs })
+    Ok(Majority {
+        sinusoid: best.sinusoid,
+        belongs,
+    })
 }
 
 struct Reweighted {
@@ -83,11 +104,29 @@ fn reweighted(readings: &Readings, start: Sinusoid) -> Result<Reweighted, LeastS
             break;
         }
         let sigma = state.sinusoid.sigma_m(readings);
-        let weights: Vec<f64> = state.normalised.iter().zip(&sigma).map(|(z, s)| (1.0 - (z / (BIWEIGHT * state.scale)).powi(2)).max(0.0) / s).collect();
-        let problem = SinusoidProblem { readings, weight_per_m: &weights, held_decay_rate_per_s: None };
+        let weights: Vec<f64> = state
+            .normalised
+            .iter()
+            .zip(&sigma)
+            .map(|(z, s)| (1.0 - (z / (BIWEIGHT * state.scale)).powi(2)).max(0.0) / s)
+            .collect();
+        let problem = SinusoidProblem {
+            readings,
+            weight_per_m: &weights,
+            held_decay_rate_per_s: None,
+        };
         let from = state.sinusoid.parameters();
-        let solution = refine(&problem, &from).or_else(|_| minimise(&problem, &from, Some(&state.sinusoid.scale(readings.span_s()))))?;
-        let next = judge(readings, Sinusoid::from_parameters(problem.all_parameters(&solution.parameters)));
+        let solution = refine(&problem, &from).or_else(|_| {
+            minimise(
+                &problem,
+                &from,
+                Some(&state.sinusoid.scale(readings.span_s())),
+            )
+        })?;
+        let next = judge(
+            readings,
+            Sinusoid::from_parameters(problem.all_parameters(&solution.parameters)),
+        );
         let settled = (next.scale / state.scale - 1.0).abs() < SCALE_SETTLED_REL;
         state = next;
         if settled {
@@ -100,13 +139,27 @@ fn reweighted(readings: &Readings, start: Sinusoid) -> Result<Reweighted, LeastS
 
 fn judge(readings: &Readings, sinusoid: Sinusoid) -> Reweighted {
     let sigma = sinusoid.sigma_m(readings);
-    let normalised: Vec<f64> = readings.tau_s.iter().zip(&readings.x_m).zip(&sigma).map(|((tau, x), s)| (x - sinusoid.position_m(*tau)) / s).collect();
+    let normalised: Vec<f64> = readings
+        .tau_s
+        .iter()
+        .zip(&readings.x_m)
+        .zip(&sigma)
+        .map(|((tau, x), s)| (x - sinusoid.position_m(*tau)) / s)
+        .collect();
     let scale = median(normalised.iter().map(|z| z.abs()).collect()) / normal_quantile(0.75);
-    Reweighted { sinusoid, scale, normalised }
+    Reweighted {
+        sinusoid,
+        scale,
+        normalised,
+    }
 }
 
 /// The scale below which residuals are rounding errors.
 fn rounding_floor(readings: &Readings) -> f64 {
-    let spread = readings.x_m.iter().fold(0.0_f64, |most, x| most.max(x.abs())) + f64::EPSILON * readings.x_ref_m.abs() / ROUNDING_REL;
+    let spread = readings
+        .x_m
+        .iter()
+        .fold(0.0_f64, |most, x| most.max(x.abs()))
+        + f64::EPSILON * readings.x_ref_m.abs() / ROUNDING_REL;
     ROUNDING_REL * spread / median(readings.u_x_m.clone())
 }

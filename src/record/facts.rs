@@ -3,7 +3,7 @@
 use super::page::escape;
 use super::rounding::{relative, rounded, significant};
 use crate::footage::{ClipFacts, FrameClock};
-use crate::measurement::{FilmPart, Measurement, RowStatus, ScaleAxis};
+use crate::measurement::{FilmPart, Measurement, RowStatus, ScaleFacts};
 
 /// The facts of film, clock, tracking and scale as an HTML list; a table of positions has fewer.
 pub(super) fn facts_html(measurement: &Measurement) -> String {
@@ -117,7 +117,7 @@ fn marker_words(film: &FilmPart) -> String {
     )
 }
 
-fn scale_words(scale: &ScaleAxis) -> String {
+fn scale_words(scale: &ScaleFacts) -> String {
     let (length, u_length) = rounded(scale.length_m * 1e3, scale.u_length_m * 1e3);
     let assumed = if scale.assumed {
         ", partly assumed"
@@ -132,7 +132,7 @@ fn scale_words(scale: &ScaleAxis) -> String {
     )
 }
 
-fn axis_words(scale: &ScaleAxis) -> String {
+fn axis_words(scale: &ScaleFacts) -> String {
     format!(
         "through ({:.1}, {:.1}) px, {}° from the bar; the marker strays from it by {} mm rms",
         scale.origin_px[0],

@@ -31,15 +31,16 @@ type Entry = (&'static str, Vec<u8>);
 
 /// Writes the result folder of a measurement, replacing an earlier result at the same place.
 ///
+/// `run_toml` is the sheet that repeats the run, its paths counted from `out_dir`.
 /// `out_dir` appears complete or stays as it was. A table has no film and so no `streak.png`.
 ///
 /// # Errors
 /// Those of [`check_destination`]; [`RecordError::Compose`] where a part cannot be made; [`RecordError::Write`],
 /// [`RecordError::Replace`] or [`RecordError::Stranded`] where the disk refuses.
-pub fn write(measurement: &Measurement, out_dir: &Path) -> Result<(), RecordError> {
+pub fn write(measurement: &Measurement, run_toml: &str, out_dir: &Path) -> Result<(), RecordError> {
     let destination = resolve(out_dir)?;
     refuse_what_is_not_ours(&destination)?;
-    place(&compose(measurement)?, &destination)
+    place(&compose(measurement, run_toml)?, &destination)
 }
 
 /// Finds out, before the work begins, whether a result can be written to `out_dir`; leaves nothing behind.
@@ -54,13 +55,13 @@ pub fn check_destination(out_dir: &Path) -> Result<(), RecordError> {
 }
 
 /// All files of a result, in memory, so that nothing is written unless all of them can be made.
-fn compose(measurement: &Measurement) -> Result<Vec<Entry>, RecordError> {
+fn compose(measurement: &Measurement, run_toml: &str) -> Result<Vec<Entry>, RecordError> {
     let mut entries = vec![
         ("result.json", result_json_text(measurement).into_bytes()),
         ("positions.csv", positions_csv(measurement)?),
         ("cycles.csv", cycles_csv(measurement)?),
         ("report.html", report_html(measurement)?.into_bytes()),
-        ("run.toml", measurement.sheet_toml.clone().into_bytes()),
+        ("run.toml", run_toml.as_bytes().to_vec()),
     ];
     if let Some(png) = streak_png(measurement)? {
         entries.push(("streak.png", png));

@@ -7,7 +7,7 @@ use serde_json::{Map, Value, json};
 
 use super::quantities::named;
 use crate::footage::{ClipFacts, FrameClock};
-use crate::measurement::{EnergyFigures, FilmPart, Measurement, RowStatus, ScaleAxis};
+use crate::measurement::{EnergyFigures, FilmPart, Measurement, RowStatus, ScaleFacts};
 use crate::motion::{LawTrial, ResidualDiagnosis};
 use crate::uncertainty::{BudgetRow, Evaluation, Quantity};
 use crate::verdict::Verdict;
@@ -128,7 +128,9 @@ fn clip(clip: &ClipFacts) -> Value {
         time_base,
         capture_rate_metadata,
         n_frames: _,
+        n_frames_promised: _,
         n_damaged: _,
+        n_interlaced: _,
     } = clip;
     json!({
         "file_name": file_name,
@@ -162,6 +164,9 @@ fn frames(measurement: &Measurement) -> Value {
         "n_outlier": count(RowStatus::Outlier),
         "n_outside": count(RowStatus::Outside),
         "n_damaged": film.map_or(0, |film| film.clip.n_damaged),
+        "n_interlaced": film.map_or(0, |film| film.clip.n_interlaced),
+        "n_promised": film.and_then(|film| film.clip.n_frames_promised),
+        "n_unsteady": film.map_or(0, |film| film.n_unsteady),
         "clock": film.map(|film| frame_clock(&film.frame_clock)),
     })
 }
@@ -191,7 +196,7 @@ fn frame_clock(clock: &FrameClock) -> Value {
     })
 }
 
-fn scale(scale: &ScaleAxis) -> Value {
+fn scale(scale: &ScaleFacts) -> Value {
     json!({
         "bar_px": scale.bar_px.iter().map(|end| numbers(end)).collect::<Value>(),
         "length": {"value": number(scale.length_m), "u": number(scale.u_length_m), "unit": "m"},

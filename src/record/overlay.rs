@@ -7,7 +7,7 @@ use super::error::RecordError;
 use super::page::escape;
 use super::picture::{Grey, data_url, png_from_grey};
 use super::rounding::significant;
-use crate::measurement::{FilmPart, ScaleAxis};
+use crate::measurement::{FilmPart, ScaleFacts};
 
 const PART: &str = "start frame";
 /// Longest side of the embedded picture, px.
@@ -90,7 +90,7 @@ struct Drawing {
 
 impl Drawing {
     /// The motion axis: an arrow in the direction in which x grows, with a tick where x = 0.
-    fn axis(self, scale: &ScaleAxis, amplitude_m: f64) -> String {
+    fn axis(self, scale: &ScaleFacts, amplitude_m: f64) -> String {
         let reach = (AXIS_REACH * amplitude_m / scale.m_per_px).max(40.0 * self.unit);
         let along = scale.direction;
         let across = turned(along);
@@ -119,7 +119,7 @@ impl Drawing {
     }
 
     /// The scale bar with its end strokes and its length.
-    fn bar(self, scale: &ScaleAxis) -> String {
+    fn bar(self, scale: &ScaleFacts) -> String {
         let [a, b] = scale.bar_px;
         let length = (b[0] - a[0]).hypot(b[1] - a[1]).max(f64::MIN_POSITIVE);
         let across = turned([(b[0] - a[0]) / length, (b[1] - a[1]) / length]);
@@ -151,7 +151,7 @@ impl Drawing {
     }
 
     /// Which side of the axis is free of the bar: 1 for the side that `turned(direction)` points to, −1 for the other.
-    fn away_from_bar(self, scale: &ScaleAxis) -> f64 {
+    fn away_from_bar(self, scale: &ScaleFacts) -> f64 {
         let middle = [
             0.5 * (scale.bar_px[0][0] + scale.bar_px[1][0]),
             0.5 * (scale.bar_px[0][1] + scale.bar_px[1][1]),

@@ -4,7 +4,7 @@ use std::f64::consts::{PI, TAU};
 
 use ebbmark::footage::{ClipFacts, FrameClock};
 use ebbmark::measurement::{
-    EnergyFigures, FilmPart, Measurement, RecordRow, RowStatus, ScaleAxis, Still, Streak, Warning,
+    EnergyFigures, FilmPart, Measurement, RecordRow, RowStatus, ScaleFacts, Still, Streak, Warning,
 };
 use ebbmark::motion::{
     Cycle, LawTrial, MotionFit, MotionQuantities, PositionUse, ResidualDiagnosis,
@@ -175,13 +175,13 @@ impl Double {
         if self.upright { [540, 960] } else { [640, 480] }
     }
 
-    fn scale_axis(&self) -> ScaleAxis {
+    fn scale_axis(&self) -> ScaleFacts {
         let (bar_px, origin_px, direction) = if self.upright {
             ([[420.0, 300.0], [420.0, 700.0]], [270.0, 480.0], [0.0, 1.0])
         } else {
             ([[120.0, 420.0], [520.0, 420.0]], [320.0, 270.0], [1.0, 0.0])
         };
-        ScaleAxis {
+        ScaleFacts {
             bar_px,
             length_m: 0.2,
             u_length_m: 0.000_2,
@@ -220,6 +220,8 @@ impl Double {
                 time_base: [1, 600],
                 capture_rate_metadata: None,
                 n_frames: self.n_frames,
+                n_frames_promised: None,
+                n_interlaced: 0,
                 n_damaged: 0,
             },
             frame_clock: FrameClock {

@@ -6,7 +6,12 @@ use crate::motion::readings::Readings;
 use nalgebra::DMatrix;
 
 /// The law's row in the table.
-pub(super) const LAW: Law = Law { key: "viscous", described: "with viscous loss", nested_in: None, fit: |weighted| fit(weighted, None) };
+pub(super) const LAW: Law = Law {
+    key: "viscous",
+    described: "with viscous loss",
+    nested_in: None,
+    fit: |weighted| fit(weighted, None),
+};
 
 /// The five parameters of the damped sinusoid, at τ = 0 the first reading.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -26,7 +31,13 @@ pub(in crate::motion) struct Sinusoid {
 impl Sinusoid {
     /// From (A, φ, γ, ω, c), brought to A ≥ 0, ω ≥ 0 and φ in (−π, π].
     pub(in crate::motion) fn from_parameters(p: [f64; 5]) -> Self {
-        let [mut amplitude_m, mut phase_rad, decay_rate_per_s, mut omega_rad_per_s, centre_m] = p;
+        let [
+            mut amplitude_m,
+            mut phase_rad,
+            decay_rate_per_s,
+            mut omega_rad_per_s,
+            centre_m,
+        ] = p;
         if omega_rad_per_s < 0.0 {
             (omega_rad_per_s, phase_rad) = (-omega_rad_per_s, -phase_rad);
         }
@@ -35,16 +46,34 @@ impl Sinusoid {
         }
         let turn = std::f64::consts::TAU;
         phase_rad -= turn * ((phase_rad - std::f64::consts::PI) / turn).ceil();
-        Self { amplitude_m, phase_rad, decay_rate_per_s, omega_rad_per_s, centre_m }
+        Self {
+            amplitude_m,
+            phase_rad,
+            decay_rate_per_s,
+            omega_rad_per_s,
+            centre_m,
+        }
     }
     /// (A, φ, γ, ω, c).
     pub(in crate::motion) fn parameters(&self) -> [f64; 5] {
-        [self.amplitude_m, self.phase_rad, self.decay_rate_per_s, self.omega_rad_per_s, self.centre_m]
+        [
+            self.amplitude_m,
+            self.phase_rad,
+            self.decay_rate_per_s,
+            self.omega_rad_per_s,
+            self.centre_m,
+        ]
     }
     /// The same motion with τ counted from `shift_s` later.
     pub(in crate::motion) fn from_later(&self, shift_s: f64) -> Self {
         let [a, phi, gamma, omega, c] = self.parameters();
-        Self::from_parameters([a * (-gamma * shift_s).exp(), phi + omega * shift_s, gamma, omega, c])
+        Self::from_parameters([
+            a * (-gamma * shift_s).exp(),
+            phi + omega * shift_s,
+            gamma,
+            omega,
+            c,
+        ])
     }
     /// Position at τ, m.
     pub(in crate::motion) fn position_m(&self, tau_s: f64) -> f64 {
@@ -59,19 +88,49 @@ impl Sinusoid {
     }
     /// Standard uncertainty of each reading: √(u_x² + (v u_t)²), m.
     pub(in crate::motion) fn sigma_m(&self, readings: &Readings) -> Vec<f64> {
-        let u = readings.u_x_m.iter().zip(&readings.u_t_s).zip(&readings.tau_s);
-        u.map(|((u_x, u_t), tau)| if *u_t > 0.0 { u_x.hypot(self.velocity_m_per_s(*tau) * u_t) } else { *u_x }).collect()
+        let u = readings
+            .u_x_m
+            .iter()
+            .zip(&readings.u_t_s)
+            .zip(&readings.tau_s);
+        u.map(|((u_x, u_t), tau)| {
+            if *u_t > 0.0 {
+                u_x.hypot(self.velocity_m_per_s(*tau) * u_t)
+            } else {
+                *u_x
+            }
+        })
+        .collect()
     }
     /// Steps that matter for each parameter: parts of the amplitude, a radian, and a radian over the record.
     pub(in crate::motion) fn scale(&self, span_s: f64) -> [f64; 5] {
-        [self.amplitude_m, 1.0, 1.0 / span_s, 1.0 / span_s, self.amplitude_m]
+        [
+            self.amplitude_m,
+            1.0,
+            1.0 / span_s,
+            1.0 / span_s,
+            self.amplitude_m,
+        ]
     }
 }
 
 /// Fits the sinusoid, with γ free or held, starting from the weighted readings' own.
-pub(super) fn fit(weighted: &Weighted, held_decay_rate_per_s: Option<f64>) -> Result<LawFit, LeastSquaresError> {
-    let Weighted { readings, weight_per_m, start, enlargement, .. } = *weighted;
-    let problem = SinusoidProblem { readings, weight_per_m, held_decay_rate_per_s };
+pub(super) fn fit(
+    weighted: &Weighted,
+    held_decay_rate_per_s: Option<f64>,
+) -> Result<LawFit, LeastSquaresError> {
+    let Weighted {
+        readings,
+        weight_per_m,
+        start,
+        enlargement,
+        ..
+    } = *weighted;
+    let problem = SinusoidProblem {
+        readings,
+        weight_per_m,
+        held_decay_rate_per_s,
+    };
     let mut from = start.parameters();
     if let Some(gamma) = held_decay_rate_per_s {
         // The mean amplitude of the record, not the first: the best undamped sinusoid runs through its middle.
@@ -81,9 +140,13 @@ pub(super) fn fit(weighted: &Weighted, held_decay_rate_per_s: Option<f64>) -> Re
     let free = problem.free_parameters(from);
     let solution = refine(&problem, &free).or_else(|_| minimise(&problem, &free, Some(&scale)))?;
     let fitted = Sinusoid::from_parameters(problem.all_parameters(&solution.parameters));
-    let mut u = solution.standard_uncertainties().into_iter().map(|u| u * enlargement.sqrt());
+    let mut u = solution
+        .standard_uncertainties()
+        .into_iter()
+        .map(|u| u * enlargement.sqrt());
     let [amplitude, phase, gamma, omega, centre] = fitted.parameters();
-    let mut row = |key, value, held: bool, unit| (key, value, if held { None } else { u.next() }, unit);
+    let mut row =
+        |key, value, held: bool, unit| (key, value, if held { None } else { u.next() }, unit);
     let parameters = vec![
         row("amplitude", amplitude, false, "m"),
         row("phase", phase, false, "rad"),
@@ -91,7 +154,11 @@ pub(super) fn fit(weighted: &Weighted, held_decay_rate_per_s: Option<f64>) -> Re
         row("damped_angular_frequency", omega, false, "rad/s"),
         row("centre", centre + readings.x_ref_m, false, "m"),
     ];
-    Ok(LawFit { parameters, sum_of_squares: solution.sum_of_squares, n_free: solution.parameters.len() })
+    Ok(LawFit {
+        parameters,
+        sum_of_squares: solution.sum_of_squares,
+        n_free: solution.parameters.len(),
+    })
 }
 
 /// The weighted problem: parameters (A, φ, γ, ω, c), or (A, φ, ω, c) where γ is held.
@@ -117,7 +184,11 @@ impl SinusoidProblem<'_> {
     }
     /// Those that are not held.
     pub(in crate::motion) fn free_parameters(&self, p: [f64; 5]) -> Vec<f64> {
-        if self.held_decay_rate_per_s.is_some() { vec![p[0], p[1], p[3], p[4]] } else { p.to_vec() }
+        if self.held_decay_rate_per_s.is_some() {
+            vec![p[0], p[1], p[3], p[4]]
+        } else {
+            p.to_vec()
+        }
     }
 }
 
@@ -129,7 +200,8 @@ impl Residuals for SinusoidProblem<'_> {
         let [a, phi, gamma, omega, c] = self.all_parameters(parameters);
         for (i, r) in out.iter_mut().enumerate() {
             let tau = self.readings.tau_s[i];
-            *r = (a * (-gamma * tau).exp() * (omega * tau + phi).cos() + c - self.readings.x_m[i]) * self.weight_per_m[i];
+            *r = (a * (-gamma * tau).exp() * (omega * tau + phi).cos() + c - self.readings.x_m[i])
+                * self.weight_per_m[i];
         }
     }
     fn jacobian(&self, parameters: &[f64], out: &mut DMatrix<f64>) {
@@ -139,8 +211,18 @@ impl Residuals for SinusoidProblem<'_> {
             let tau = self.readings.tau_s[i];
             let envelope = w * (-gamma * tau).exp();
             let (sin, cos) = (omega * tau + phi).sin_cos();
-            let row = [envelope * cos, -a * envelope * sin, -a * envelope * tau * cos, -a * envelope * tau * sin, *w];
-            let columns = row.into_iter().enumerate().filter(|(j, _)| free || *j != 2).map(|(_, v)| v);
+            let row = [
+                envelope * cos,
+                -a * envelope * sin,
+                -a * envelope * tau * cos,
+                -a * envelope * tau * sin,
+                *w,
+            ];
+            let columns = row
+                .into_iter()
+                .enumerate()
+                .filter(|(j, _)| free || *j != 2)
+                .map(|(_, v)| v);
             for (j, v) in columns.enumerate() {
                 out[(i, j)] = v;
             }
