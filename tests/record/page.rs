@@ -77,6 +77,16 @@ fn the_answers_come_first_and_in_words() {
 }
 
 #[test]
+fn a_command_copied_from_the_page_does_nothing_else() {
+    let html = report(&Double::table(300).named("a; rm -r 'b'.csv").build());
+    assert!(html.contains(
+        "<pre>ebbmark refit &#39;a; rm -r &#39;\\&#39;&#39;b&#39;\\&#39;&#39;.csv&#39;</pre>"
+    ));
+    let html = report(&Double::table(300).build());
+    assert!(html.contains("<pre>ebbmark refit positions.csv</pre>"));
+}
+
+#[test]
 fn every_picture_says_what_it_shows() {
     let html = report(&Double::film(900).build());
     assert_eq!(
