@@ -107,12 +107,12 @@ fn capitalised(words: &str) -> String {
 }
 
 fn key_figures(measurement: &Measurement) -> String {
-    use Align::{Left, Right};
+    use Align::{Left, Right, Whole};
     let columns = [
         ("Quantity", Left),
         ("", Left),
         ("Value", Right),
-        ("95 %", Left),
+        ("95 %", Whole),
         ("Unit", Left),
         ("Relative", Right),
     ];

@@ -1,4 +1,4 @@
-//! The streak picture: position against time as the film saw it, with the fitted curve drawn through the marker's track.
+//! The streak picture: position against time as the film saw it, with the fit drawn through the marker's track.
 //!
 //! Time runs to the right and x upwards, as in the plots below it in the report. A column shows the mean of the frames that
 //! fall into it, so that a long film is averaged and a short one repeated; the strip at the foot is dark where the marker
@@ -8,7 +8,7 @@ use super::brush::{Brush, span};
 use super::error::RecordError;
 use super::field::{Bounds, Field};
 use super::picture::{coarsen, mean, png_from_rgb};
-use super::stretch::{Span, first_cycles};
+use super::stretch::{Span, first_cycles, period_s};
 use crate::measurement::{FilmPart, Measurement, RecordRow, RowStatus, Streak};
 use crate::motion::MotionFit;
 
@@ -36,6 +36,8 @@ const STRIP_LOST: [u8; 3] = [20, 20, 20];
 
 /// Points of the curve in a column, so that a steep stroke is still a smooth line.
 const CURVE_POINTS_PER_COLUMN: usize = 4;
+/// With fewer columns a cycle the curve would cover the picture like paint.
+const LEAST_COLUMNS_PER_CYCLE: f64 = 10.0;
 
 /// `streak.png`; `None` for a table, or where the film gave no lines.
 ///
@@ -98,7 +100,7 @@ fn drawn_lines(
     if bounds.coarse {
         coarsen(&mut canvas);
     }
-    draw_curve(&field, &mut canvas, &measurement.fit, film);
+    draw_fit(&field, &mut canvas, &measurement.fit, film);
     canvas.extend(strip(&field, &measurement.rows));
     png_from_rgb(
         &canvas,
@@ -130,21 +132,39 @@ fn painted(field: &Field, streak: &Streak) -> Vec<u8> {
     canvas
 }
 
-/// Lays the fitted curve over the picture, between the first and the last reading used.
-fn draw_curve(field: &Field, canvas: &mut [u8], fit: &MotionFit, film: &FilmPart) {
+/// Lays the fit over the picture, between the first and the last reading used: the curve, or the amplitude to both sides
+/// of the centre where the cycles are too close to be told apart.
+fn draw_fit(field: &Field, canvas: &mut [u8], fit: &MotionFit, film: &FilmPart) {
     let mut brush = Brush::new(field.width, field.height);
-    let n_points = field.width * CURVE_POINTS_PER_COLUMN;
-    let points = (0..=n_points)
-        .map(|i| i as f64 / CURVE_POINTS_PER_COLUMN as f64)
-        .filter_map(|column| {
-            let t_s = field.time_s(column);
-            let sample = (fit.position_m(t_s) / film.scale.m_per_px - film.streak.first_px)
-                / film.streak.step_px;
-            (t_s >= fit.t_ref_s && t_s <= fit.t_end_s && sample.is_finite())
-                .then(|| [column - 0.5, field.row_of(sample)])
-        });
-    brush.line(points);
+    if period_s(fit) / field.column_s >= LEAST_COLUMNS_PER_CYCLE {
+        brush.line(points(field, fit, film, |t_s| fit.position_m(t_s)));
+    } else {
+        brush.line(points(field, fit, film, |t_s| {
+            fit.centre_m + fit.envelope_m(t_s)
+        }));
+        brush.line(points(field, fit, film, |t_s| {
+            fit.centre_m - fit.envelope_m(t_s)
+        }));
+    }
     brush.lay_over(canvas);
+}
+
+/// A course of positions in m as columns and rows of the field.
+fn points(
+    field: &Field,
+    fit: &MotionFit,
+    film: &FilmPart,
+    position_m: impl Fn(f64) -> f64,
+) -> impl Iterator<Item = [f64; 2]> {
+    let columns = (0..=field.width * CURVE_POINTS_PER_COLUMN)
+        .map(|i| i as f64 / CURVE_POINTS_PER_COLUMN as f64);
+    columns.filter_map(move |column| {
+        let t_s = field.time_s(column);
+        let sample =
+            (position_m(t_s) / film.scale.m_per_px - film.streak.first_px) / film.streak.step_px;
+        let drawn = t_s >= fit.t_ref_s && t_s <= fit.t_end_s && sample.is_finite();
+        drawn.then(|| [column - 0.5, field.row_of(sample)])
+    })
 }
 
 /// The strip at the foot: dark in the columns in which a frame lost the marker.

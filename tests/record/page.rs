@@ -144,12 +144,12 @@ fn words_on_an_upright_picture_stay_inside_it_and_off_the_marker() {
 fn figures_are_rounded_to_what_is_known() {
     let html = report(&Double::film(900).build());
     assert!(
-        html.contains(">1.204352</td><td>± 0.000069</td><td>s</td>"),
+        html.contains(">1.204352</td><td class=\"whole\">± 0.000069</td><td>s</td>"),
         "the period to two digits of U"
     );
     let html = report(&Double::film(900).with_open_bounds().build());
     assert!(
-        html.contains(">≥ 56000</td><td>(95 %, one-sided)</td>"),
+        html.contains(">≥ 56000</td><td class=\"whole\">(95 %, one-sided)</td>"),
         "Q is bounded from below"
     );
 }
