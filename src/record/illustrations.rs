@@ -25,9 +25,9 @@ pub(super) fn film_pictures(measurement: &Measurement) -> Result<String, RecordE
     if let Some(png) = streak_png_for_page(measurement)? {
         html.push_str(&figure(
             "Streak picture",
-            &picture(&png, "The marker's track in time as the film saw it, with the fitted curve over it"),
-            "Streak: one line of every frame along the motion axis, side by side in time (to the right); x grows upwards. The fitted curve lies over \
-             the marker's track. The strip at the foot is dark where the marker was lost.",
+            &picture(&png, "The marker's track in time as the film saw it, with the fit over it"),
+            "Streak: one line of every frame along the motion axis, side by side in time (to the right); x grows upwards. The fit lies over the \
+             marker's track: its curve, or its amplitude alone where the cycles are too close to be told apart. The strip at the foot is dark where the marker was lost.",
         ));
     }
     if let Some(png) = streak_png_close(measurement)? {

@@ -10,6 +10,7 @@ mod budget;
 mod canvas;
 mod error;
 mod facts;
+mod field;
 mod folder;
 mod illustrations;
 mod json;

@@ -75,6 +75,8 @@ pub(super) struct Table {
 pub(super) enum Align {
     /// Words.
     Left,
+    /// Words that must not be parted: a sign and its figure.
+    Whole,
     /// Figures.
     Right,
 }
@@ -147,6 +149,7 @@ impl Align {
     fn class(self) -> &'static str {
         match self {
             Self::Left => "",
+            Self::Whole => " class=\"whole\"",
             Self::Right => " class=\"figure\"",
         }
     }

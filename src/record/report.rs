@@ -107,12 +107,12 @@ fn capitalised(words: &str) -> String {
 }
 
 fn key_figures(measurement: &Measurement) -> String {
-    use Align::{Left, Right};
+    use Align::{Left, Right, Whole};
     let columns = [
         ("Quantity", Left),
         ("", Left),
         ("Value", Right),
-        ("95 %", Left),
+        ("95 %", Whole),
         ("Unit", Left),
         ("Relative", Right),
     ];
@@ -174,11 +174,14 @@ fn warnings(measurement: &Measurement) -> String {
 }
 
 fn repeat(measurement: &Measurement) -> String {
-    let words = "Save the sheet below as run.toml (it also lies beside this report), put the source next to it, and run:";
-    let command = if measurement.film.is_some() {
-        "ebbmark measure run.toml".to_owned()
+    let (words, command) = if measurement.film.is_some() {
+        let words = "Save the sheet below as run.toml (it also lies beside this report), put the clip next to it, and run:";
+        (words, "ebbmark measure run.toml".to_owned())
     } else {
-        format!("ebbmark refit {}", measurement.source_name)
+        (
+            "With the table of positions at hand, run:",
+            format!("ebbmark refit {}", shell_word(&measurement.source_name)),
+        )
     };
     format!(
         "{}<pre>{}</pre>\n<p>Version {}. The same source and sheet give the same files, byte for byte.</p>\n<pre>{}</pre>\n",
@@ -187,6 +190,16 @@ fn repeat(measurement: &Measurement) -> String {
         env!("CARGO_PKG_VERSION"),
         escape(&measurement.sheet_toml)
     )
+}
+
+/// A name as one word of a shell, so that a command copied from a page does nothing else.
+fn shell_word(name: &str) -> String {
+    let plain = |c: char| c.is_ascii_alphanumeric() || "._/-".contains(c);
+    if name.chars().all(plain) && !name.starts_with('-') {
+        name.to_owned()
+    } else {
+        format!("'{}'", name.replace('\'', "'\\''"))
+    }
 }
 
 fn glossary(measurement: &Measurement) -> String {

@@ -12,6 +12,8 @@ pub struct Scores {
     pub height: usize,
     /// Scores −1…1, row by row; element (v, u) belongs to the template's top-left pixel at (u, v).
     pub values: Vec<f64>,
+    /// Contrast of the window under each position over the template's: √(Σ(f − f̄)² / Σ(t − t̄)²).
+    pub contrasts: Vec<f64>,
 }
 
 impl Scores {
@@ -53,6 +55,7 @@ pub fn correlate(field: &[i16], width: usize, height: usize, template: &Template
             width: 0,
             height: 0,
             values: Vec::new(),
+            contrasts: Vec::new(),
         };
     }
     // Half the range is taken off so that a product fits the kernel's 32 bits; r does not change under an offset.
@@ -69,26 +72,29 @@ pub fn correlate(field: &[i16], width: usize, height: usize, template: &Template
     );
     let tables = RunningSums::of(&field, width, height);
     let n = to_f64(i64::try_from(columns * rows).unwrap_or(i64::MAX));
-    let values = sums
-        .iter()
-        .enumerate()
-        .map(|(at, &sum)| {
-            let (sum_f, sum_f2) = tables.under(at % out_width, at / out_width, columns, rows);
-            let energy = to_f64(sum_f2) - to_f64(sum_f) * to_f64(sum_f) / n;
-            // Rounding leaves a template mean of up to half a step; its product with f̄ is taken off here.
-            let product = to_f64(sum) - to_f64(sum_f) * template.centred_sum() / n;
-            // Twelfth-bit luma in whole steps: a contrast below one step rms is the rounding's own.
-            if energy < n {
-                0.0
-            } else {
-                (product / (energy * template.energy()).sqrt()).clamp(-1.0, 1.0)
-            }
-        })
-        .collect();
+    let (mut values, mut contrasts) = (
+        Vec::with_capacity(sums.len()),
+        Vec::with_capacity(sums.len()),
+    );
+    for (at, &sum) in sums.iter().enumerate() {
+        let (sum_f, sum_f2) = tables.under(at % out_width, at / out_width, columns, rows);
+        let energy = to_f64(sum_f2) - to_f64(sum_f) * to_f64(sum_f) / n;
+        // Rounding leaves a template mean of up to half a step; its product with f̄ is taken off here.
+        let product = to_f64(sum) - to_f64(sum_f) * template.centred_sum() / n;
+        // 12-bit luma in whole steps: a contrast below one step rms is the rounding's own.
+        let plain = energy < n;
+        values.push(if plain {
+            0.0
+        } else {
+            (product / (energy * template.energy()).sqrt()).clamp(-1.0, 1.0)
+        });
+        contrasts.push((energy.max(0.0) / template.energy()).sqrt());
+    }
     Scores {
         width: out_width,
         height: out_height,
         values,
+        contrasts,
     }
 }
 

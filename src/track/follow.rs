@@ -13,6 +13,9 @@ const LEAST_SCORE: f64 = 0.5;
 const COVERED_SHARE: f64 = 0.6;
 /// Share of the usual score needed to believe a marker found again somewhere.
 const FOUND_AGAIN_SHARE: f64 = 0.75;
+/// Contrast of a match over the template's, at the least and at the most. Correlation knows no contrast: a faint stain on a
+/// wall can resemble a marker in everything else. Smear and a dim light halve a marker's contrast, no more.
+const CONTRAST: std::ops::RangeInclusive<f64> = 0.3..=3.0;
 /// How quickly the usual score follows: the mean of about this many frames.
 const USUAL_SCORE_FRAMES: f64 = 30.0;
 /// Least half-width of the search window around a prediction, px.
@@ -79,7 +82,10 @@ impl Follower {
     /// * `time`: any clock that runs evenly with the frames, forwards or backwards; only differences count.
     pub fn step(&mut self, luma: &LumaView<'_>, time: f64) -> SightingOutcome {
         let found = self.look(luma, time);
-        let Some(Match { corner_px, score }) = found else {
+        let Some(Match {
+            corner_px, score, ..
+        }) = found
+        else {
             self.lost_run += 1;
             self.history.clear();
             return SightingOutcome::Lost;
@@ -106,7 +112,7 @@ impl Follower {
         let (corner, radius) = self.predict(time);
         let near = |radius: f64, scratch: &mut Vec<i16>, template: &Template| {
             search_window(luma, template, corner, whole(radius), scratch)
-                .filter(|found| found.score >= covered)
+                .filter(|found| found.score >= covered && CONTRAST.contains(&found.contrast))
         };
         if self.lost_run == 0 {
             // Twice: the second window, four times as wide, catches a knock or a frame the stamps do not know of.
@@ -124,7 +130,7 @@ impl Follower {
         self.coarse
             .as_ref()?
             .search_picture(luma, &self.template, &mut self.scratch)
-            .filter(|found| found.score >= again)
+            .filter(|found| found.score >= again && CONTRAST.contains(&found.contrast))
     }
 
     /// Expected corner and half-width of the window around it, px: the polynomial through the last sightings.

@@ -9,6 +9,8 @@ pub struct Peak {
     pub p_px: [f64; 2],
     /// Score there.
     pub score: f64,
+    /// Contrast of the nearest window over the template's.
+    pub contrast: f64,
 }
 
 /// The maximum of the quadratic that fits the 3 × 3 scores around the best whole position, cross term included.
@@ -49,6 +51,7 @@ pub fn quadratic_peak(scores: &Scores) -> Option<Peak> {
     Some(Peak {
         p_px: [to_f64(u) + x, to_f64(v) + y],
         score: score.clamp(-1.0, 1.0),
+        contrast: scores.contrasts[v * scores.width + u],
     })
 }
 
@@ -74,6 +77,7 @@ mod tests {
             width: 5,
             height: 5,
             values,
+            contrasts: vec![1.0; 25],
         }
     }
 
@@ -98,7 +102,8 @@ mod tests {
             quadratic_peak(&Scores {
                 width: 0,
                 height: 0,
-                values: vec![]
+                values: vec![],
+                contrasts: vec![]
             })
             .is_none()
         );

@@ -11,6 +11,8 @@ use crate::footage::{GreyPicture, LumaView};
 pub(super) struct Match {
     pub(super) corner_px: [f64; 2],
     pub(super) score: f64,
+    /// Contrast over the template's: 1 where it looks as it did in the start frame.
+    pub(super) contrast: f64,
 }
 
 /// The best match whose corner lies within `radius` px of a corner, each way; None where the peak lies on the window's edge.
@@ -45,10 +47,15 @@ pub(super) fn search_window(
     let reach = i64::try_from(LOWPASS_REACH_PX).unwrap_or(0);
     luma.window_into(left - reach, top - reach, wide, high, scratch);
     let scores = correlate(&lowpass(scratch, wide, high), width, height, template);
-    let Peak { p_px, score } = quadratic_peak(&scores)?;
+    let Peak {
+        p_px,
+        score,
+        contrast,
+    } = quadratic_peak(&scores)?;
     Some(Match {
         corner_px: [to_f64(left) + p_px[0], to_f64(top) + p_px[1]],
         score,
+        contrast,
     })
 }
 

@@ -77,6 +77,16 @@ fn the_answers_come_first_and_in_words() {
 }
 
 #[test]
+fn a_command_copied_from_the_page_does_nothing_else() {
+    let html = report(&Double::table(300).named("a; rm -r 'b'.csv").build());
+    assert!(html.contains(
+        "<pre>ebbmark refit &#39;a; rm -r &#39;\\&#39;&#39;b&#39;\\&#39;&#39;.csv&#39;</pre>"
+    ));
+    let html = report(&Double::table(300).build());
+    assert!(html.contains("<pre>ebbmark refit positions.csv</pre>"));
+}
+
+#[test]
 fn every_picture_says_what_it_shows() {
     let html = report(&Double::film(900).build());
     assert_eq!(
@@ -134,12 +144,12 @@ fn words_on_an_upright_picture_stay_inside_it_and_off_the_marker() {
 fn figures_are_rounded_to_what_is_known() {
     let html = report(&Double::film(900).build());
     assert!(
-        html.contains(">1.204352</td><td>± 0.000069</td><td>s</td>"),
+        html.contains(">1.204352</td><td class=\"whole\">± 0.000069</td><td>s</td>"),
         "the period to two digits of U"
     );
     let html = report(&Double::film(900).with_open_bounds().build());
     assert!(
-        html.contains(">≥ 56000</td><td>(95 %, one-sided)</td>"),
+        html.contains(">≥ 56000</td><td class=\"whole\">(95 %, one-sided)</td>"),
         "Q is bounded from below"
     );
 }

@@ -109,3 +109,29 @@ fn a_long_film_is_averaged_into_a_wide_screen() {
     );
     assert!(streak_png(&Double::table(300).build()).unwrap().is_none());
 }
+
+#[test]
+fn where_cycles_run_together_the_amplitude_is_drawn_and_the_middle_left_free() {
+    // 275 cycles in 1600 columns: a curve would cover everything between its turning points.
+    let measurement = Double::film(20_000).build();
+    let picture = picture(&measurement);
+    let column = 100;
+    let coloured = |row: u32| {
+        let [r, _, b] = picture.get_pixel(column, row).0;
+        r > b.saturating_add(20)
+    };
+    let rows: Vec<u32> = (0..420).filter(|&row| coloured(row)).collect();
+    let t_s = (f64::from(column) + 0.5) * 20_000.0 / 60.0 / 1600.0;
+    for side in [-1.0, 1.0] {
+        let wanted = row_of(
+            &measurement,
+            measurement.fit.centre_m + side * measurement.fit.envelope_m(t_s),
+        );
+        assert!(
+            rows.iter()
+                .any(|&row| (f64::from(row) - wanted).abs() < 1.5),
+            "wanted row {wanted}, got {rows:?}"
+        );
+    }
+    assert!(rows.len() < 12, "two thin lines, got {rows:?}");
+}

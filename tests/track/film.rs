@@ -43,11 +43,14 @@ fn grain(x: i64, y: i64, salt: u64) -> f64 {
     ((z ^ (z >> 31)) >> 11) as f64 / (1_u64 << 53) as f64 - 0.5
 }
 
-/// The marker's pattern at a place from its centre, px: four quarters with soft edges.
-fn pattern(dx: f64, dy: f64) -> Option<f64> {
+/// The marker's pattern at a place from its centre, px, and how much of the pixel it covers: four quarters, soft edges.
+fn pattern(dx: f64, dy: f64) -> (f64, f64) {
     let half = MARKER_PX as f64 / 2.0 - 2.0;
-    (dx.abs() <= half && dy.abs() <= half)
-        .then(|| 128.0 + 90.0 * (dx / 1.2).tanh() * (dy / 1.2).tanh())
+    let inside = |d: f64| 0.5 - 0.5 * ((d.abs() - half) / 0.8).tanh();
+    (
+        128.0 + 90.0 * (dx / 1.2).tanh() * (dy / 1.2).tanh(),
+        inside(dx) * inside(dy),
+    )
 }
 
 fn draw(shot: &Shot, number: usize) -> Vec<u8> {
@@ -57,16 +60,15 @@ fn draw(shot: &Shot, number: usize) -> Vec<u8> {
             let (xf, yf) = (x as f64, y as f64);
             let wall = 120.0
                 + 25.0 * (0.11 * xf).sin() * (0.07 * yf).cos()
-                + 8.0 * grain((x / 3) as i64, (y / 3) as i64, 7);
-            let marked = [shot.marker, shot.other]
-                .iter()
-                .flatten()
-                .find_map(|[mx, my]| pattern(xf - mx, yf - my));
-            let value = if x < shot.hand_to_px {
-                70.0 + 40.0 * (0.2 * xf + 0.13 * yf).sin()
-            } else {
-                marked.unwrap_or(wall)
-            };
+                + 30.0 * grain((x / 5) as i64, (y / 5) as i64, 7);
+            let mut value = wall;
+            for [mx, my] in [shot.marker, shot.other].into_iter().flatten() {
+                let (marker, cover) = pattern(xf - mx, yf - my);
+                value += cover * (marker - value);
+            }
+            if x < shot.hand_to_px {
+                value = 70.0 + 40.0 * (0.2 * xf + 0.13 * yf).sin();
+            }
             let noisy = value * shot.light + 3.0 * grain(x as i64, y as i64, 1000 + number as u64);
             grey.push(noisy.round().clamp(0.0, 255.0) as u8);
         }
