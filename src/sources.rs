@@ -48,3 +48,12 @@ pub struct Huber81;
 /// D. M. Bates, D. G. Watts, "A relative offset orthogonality convergence criterion for nonlinear least squares", *Technometrics* **23**(2), 179–183 (1981). From memory.
 #[derive(Debug)]
 pub struct BatesWatts81;
+/// S. Baker, I. Matthews, "Lucas–Kanade 20 years on: a unifying framework", *Int. J. Comput. Vis.* **56**(3), 221–255 (2004), doi:10.1023/B:VISI.0000011205.11775.fd.
+#[derive(Debug)]
+pub struct BakerMatthews04;
+/// B. Pan, K. Li, W. Tong, "Fast, robust and accurate digital image correlation calculation without redundant computations", *Exp. Mech.* **53**, 1277–1289 (2013), doi:10.1007/s11340-013-9717-6.
+#[derive(Debug)]
+pub struct Pan13;
+/// R. G. Keys, "Cubic convolution interpolation for digital image processing", *IEEE Trans. Acoust. Speech Signal Process.* **29**(6), 1153–1160 (1981). From memory.
+#[derive(Debug)]
+pub struct Keys81;

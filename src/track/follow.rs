@@ -83,7 +83,10 @@ impl Follower {
     pub fn step(&mut self, luma: &LumaView<'_>, time: f64) -> SightingOutcome {
         let found = self.look(luma, time);
         let Some(Match {
-            corner_px, score, ..
+            corner_px,
+            covariance_px2,
+            score,
+            ..
         }) = found
         else {
             self.lost_run += 1;
@@ -102,7 +105,7 @@ impl Follower {
                 corner_px[0] + self.half_px[0],
                 corner_px[1] + self.half_px[1],
             ],
-            covariance_px2: self.template.covariance_px2(score),
+            covariance_px2,
             match_score: score,
         })
     }

@@ -4,6 +4,7 @@
 //! there is none. Matching is by zero-mean normalised cross-correlation on low-passed luma in coded pixels; the lens,
 //! the scale and the display's turn are other rooms' business.
 
+mod align;
 mod correlate;
 mod error;
 mod film_track;

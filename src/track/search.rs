@@ -10,6 +10,8 @@ use crate::footage::{GreyPicture, LumaView};
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub(super) struct Match {
     pub(super) corner_px: [f64; 2],
+    /// Covariance of the corner (xx, xy, yy), px².
+    pub(super) covariance_px2: [f64; 3],
     pub(super) score: f64,
     /// Contrast over the template's: 1 where it looks as it did in the start frame.
     pub(super) contrast: f64,
@@ -46,14 +48,21 @@ pub(super) fn search_window(
     let (wide, high) = (width + 2 * LOWPASS_REACH_PX, height + 2 * LOWPASS_REACH_PX);
     let reach = i64::try_from(LOWPASS_REACH_PX).unwrap_or(0);
     luma.window_into(left - reach, top - reach, wide, high, scratch);
-    let scores = correlate(&lowpass(scratch, wide, high), width, height, template);
+    let field = lowpass(scratch, wide, high);
     let Peak {
         p_px,
         score,
         contrast,
-    } = quadratic_peak(&scores)?;
+    } = quadratic_peak(&correlate(&field, width, height, template))?;
+    // The correlation finds the place; laying the template over it tells it more finely.
+    let aligned = template.align(&field, width, height, p_px)?;
+    let corner_px = [
+        to_f64(left) + aligned.corner_px[0],
+        to_f64(top) + aligned.corner_px[1],
+    ];
     Some(Match {
-        corner_px: [to_f64(left) + p_px[0], to_f64(top) + p_px[1]],
+        corner_px,
+        covariance_px2: aligned.covariance_px2,
         score,
         contrast,
     })

@@ -1,8 +1,9 @@
 //! The template: what the marker looks like, and how well its look tells where it is.
 
 use super::TrackError;
+use super::align::{Aligned, Aligner};
 use super::lowpass::{LOWPASS_REACH_PX, lowpass};
-use super::texture::{lowpassed_noise_gain, noise, shift_covariance};
+use super::texture::{lowpassed_noise_gain, noise};
 use crate::footage::LumaView;
 
 /// A box of whole coded pixels.
@@ -49,8 +50,7 @@ pub struct Template {
     centred_sum: f64,
     /// Σ(t − t̄)².
     energy: f64,
-    /// Covariance of a shift (xx, xy, yy) for low-passed noise of unit variance, px² per (12-bit step)².
-    shift_covariance: [f64; 3],
+    aligner: Aligner,
 }
 
 impl Template {
@@ -148,7 +148,7 @@ impl Template {
             .iter()
             .map(|&value| (f64::from(value) - mean).powi(2))
             .sum();
-        let shift_covariance = shift_covariance(&luma, width, height)?;
+        let aligner = Aligner::of(&luma, width, height)?;
         let centred_sum = centred.iter().map(|&value| f64::from(value)).sum();
         (energy > 0.0).then_some(Self {
             width,
@@ -156,7 +156,7 @@ impl Template {
             centred,
             centred_sum,
             energy,
-            shift_covariance,
+            aligner,
         })
     }
 
@@ -188,22 +188,22 @@ impl Template {
 
     /// Standard uncertainty of a shift along a direction for low-passed noise of a standard deviation, px.
     fn shift_u_px(&self, noise: f64, [x, y]: [f64; 2]) -> f64 {
-        let [xx, xy, yy] = self.shift_covariance;
+        let [xx, xy, yy] = self.aligner.shift_covariance();
         noise * ((x * x * xx + 2.0 * x * y * xy + y * y * yy) / (x * x + y * y)).sqrt()
     }
 
-    /// Covariance (xx, xy, yy) of a match with a given score, px².
+    /// Lays the template over a field of low-passed luma, starting at a corner near the peak; the position and its covariance.
     ///
-    /// The score tells how much of the window the template does not explain: Σ(residual)² = (1 − r²)/r² · Σ(t − t̄)² in
-    /// the template's own contrast. Half of it is the template's own noise, which moves all sightings alike.
-    ///
-    /// # Source
-    /// [Robinson & Milanfar 2004](crate::sources::RobinsonMilanfar04), with the noise correlated as the low-pass leaves it.
-    #[must_use]
-    pub fn covariance_px2(&self, score: f64) -> [f64; 3] {
-        let unexplained = (1.0 - score * score).max(0.0) / (score * score).max(1e-6);
-        let variance = 0.5 * unexplained * self.energy / to_f64(self.width * self.height);
-        self.shift_covariance.map(|entry| entry * variance)
+    /// The covariance is that of [Robinson & Milanfar 2004](crate::sources::RobinsonMilanfar04) for what the template does
+    /// not explain, taken as noise that the low-pass correlated. None where the alignment does not settle near the start.
+    pub(super) fn align(
+        &self,
+        field: &[i16],
+        width: usize,
+        height: usize,
+        start_px: [f64; 2],
+    ) -> Option<Aligned> {
+        self.aligner.align(field, width, height, start_px)
     }
 }
 

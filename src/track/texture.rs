@@ -1,4 +1,4 @@
-//! What the texture of a box tells of its place: the bound on a shift, and the noise that blurs it.
+//! The noise in a box: how strong it is, and what the low-pass makes of it.
 
 use super::lowpass::{LOWPASS_REACH_PX, LOWPASS_SIGMA_PX};
 
@@ -26,45 +26,8 @@ pub(super) fn noise(window: &[i16], width: usize) -> f64 {
     f64::from(median) / 6.0 / 0.6745 / 16.0
 }
 
-/// Covariance of a shift for low-passed noise of unit variance: H⁻¹ M H⁻¹ with H = Σ g gᵀ and M = ΣΣ g(p) g(q)ᵀ ρ(p − q).
-///
-/// ρ is the correlation that the low-pass leaves in white noise, a Gaussian of √2 times its width. None where H is singular.
-pub(super) fn shift_covariance(luma: &[i16], width: usize, height: usize) -> Option<[f64; 3]> {
-    let value = |x: usize, y: usize| f64::from(luma[y * width + x]);
-    let (inner_width, inner_height) = (width - 2, height - 2);
-    let mut gradient = [
-        Vec::with_capacity(luma.len()),
-        Vec::with_capacity(luma.len()),
-    ];
-    for y in 1..=inner_height {
-        for x in 1..=inner_width {
-            gradient[0].push((value(x + 1, y) - value(x - 1, y)) / 2.0);
-            gradient[1].push((value(x, y + 1) - value(x, y - 1)) / 2.0);
-        }
-    }
-    let [gx, gy] = &gradient;
-    let (sx, sy) = (spread(gx, inner_width), spread(gy, inner_width));
-    let dot = |a: &[f64], b: &[f64]| a.iter().zip(b).map(|(a, b)| a * b).sum::<f64>();
-    let [hxx, hxy, hyy] = [dot(gx, gx), dot(gx, gy), dot(gy, gy)];
-    let [mxx, mxy, myy] = [dot(gx, &sx), dot(gx, &sy), dot(gy, &sy)];
-    let determinant = hxx * hyy - hxy * hxy;
-    // A stripe leaves rounding in the weak direction; such a box must not look as if it told a shift along it.
-    if determinant.is_nan() || determinant <= 1e-6 * (hxx + hyy).powi(2) {
-        return None;
-    }
-    let [ixx, ixy, iyy] = [hyy / determinant, -hxy / determinant, hxx / determinant];
-    // K = H⁻¹ M, then K H⁻¹.
-    let (kxx, kxy) = (ixx * mxx + ixy * mxy, ixx * mxy + ixy * myy);
-    let (kyx, kyy) = (ixy * mxx + iyy * mxy, ixy * mxy + iyy * myy);
-    Some([
-        kxx * ixx + kxy * ixy,
-        kxx * ixy + kxy * iyy,
-        kyx * ixy + kyy * iyy,
-    ])
-}
-
 /// Convolution of a plane with the noise's correlation, zero outside.
-fn spread(plane: &[f64], width: usize) -> Vec<f64> {
+pub(super) fn spread(plane: &[f64], width: usize) -> Vec<f64> {
     let variance = 2.0 * LOWPASS_SIGMA_PX * LOWPASS_SIGMA_PX;
     let reach = 4 * LOWPASS_REACH_PX / 3;
     let weight = |distance: usize| (-0.5 * to_f64(distance).powi(2) / variance).exp();
