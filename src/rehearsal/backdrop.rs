@@ -1,0 +1,218 @@
+//! The still part of the picture: drawn once, blurred by the lens, moved by the camera's shake.
+use std::f64::consts::TAU;
+
+use super::grain::mixed;
+use super::picture::{Picture, as_f64, centre_px, to_f32};
+use super::scene::Scene;
+use super::sprite::normal_weights;
+use super::workshop::Workshop;
+
+/// Samples of a pixel, each way.
+const STILL_SAMPLES: u32 = 4;
+/// Taps of the windowed sinc that moves the picture by a fraction of a pixel.
+const SHAKE_TAPS: usize = 8;
+/// Waves that make up the shake.
+const N_WAVES: u32 = 5;
+
+/// Slow movement of the whole picture: waves of equal power, none faster than a hand.
+#[derive(Clone, Debug, Default)]
+pub(super) struct Shake {
+    /// Amplitude (px), frequency (Hz), phase across and down (rad).
+    waves: Vec<[f64; 4]>,
+}
+
+impl Shake {
+    pub(super) fn new(scene: &Scene) -> Self {
+        if scene.camera.shake_px == 0.0 {
+            return Self::default();
+        }
+        #[expect(clippy::cast_precision_loss, reason = "the top 53 bits are exact")]
+        let unit = |n: u32| {
+            (mixed(scene.seed ^ mixed(u64::from(n) ^ 0x7368_616b)) >> 11) as f64
+                / (1_u64 << 53) as f64
+        };
+        // A sine of amplitude a has mean square a²/2.
+        let amplitude_px = scene.camera.shake_px * (2.0 / f64::from(N_WAVES)).sqrt();
+        let wave = |n: u32| {
+            [
+                amplitude_px,
+                0.3 + 2.7 * unit(3 * n),
+                TAU * unit(3 * n + 1),
+                TAU * unit(3 * n + 2),
+            ]
+        };
+        Self {
+            waves: (0..N_WAVES).map(wave).collect(),
+        }
+    }
+
+    /// Shift across and down at a time, px.
+    pub(super) fn at_px(&self, t_s: f64) -> [f64; 2] {
+        self.waves.iter().fold(
+            [0.0; 2],
+            |[x, y], [amplitude_px, frequency_hz, phase_x, phase_y]| {
+                let turn = TAU * frequency_hz * t_s;
+                [
+                    x + amplitude_px * (turn + phase_x).sin(),
+                    y + amplitude_px * (turn + phase_y).sin(),
+                ]
+            },
+        )
+    }
+}
+
+impl Picture {
+    /// The still part, moved by the shake, with a windowed sinc: bilinear would blur and sharpen it in step with the shake.
+    pub(super) fn moved(&self, [shake_x_px, shake_y_px]: [f64; 2], pixel_width_px: f64) -> Self {
+        if shake_x_px == 0.0 && shake_y_px == 0.0 {
+            return self.clone();
+        }
+        let Self {
+            width,
+            height,
+            grey,
+        } = self;
+        let (column_shift, column_weights) = sinc_weights(-shake_x_px / pixel_width_px);
+        let (row_shift, row_weights) = sinc_weights(-shake_y_px);
+        let mut lines = vec![0.0_f32; grey.len()];
+        for (row, line) in lines.chunks_exact_mut(*width).enumerate() {
+            for (tap, weight) in row_weights.iter().enumerate() {
+                let source = clamped(row, row_shift + tap.cast_signed(), *height) * width;
+                line.iter_mut()
+                    .zip(&grey[source..source + width])
+                    .for_each(|(sum, from)| *sum += weight * from);
+            }
+        }
+        let mut moved = vec![0.0_f32; grey.len()];
+        for (to, from) in moved
+            .chunks_exact_mut(*width)
+            .zip(lines.chunks_exact(*width))
+        {
+            for (column, sum) in to.iter_mut().enumerate() {
+                let at =
+                    |tap: usize| from[clamped(column, column_shift + tap.cast_signed(), *width)];
+                *sum = column_weights
+                    .iter()
+                    .enumerate()
+                    .map(|(tap, weight)| weight * at(tap))
+                    .sum();
+            }
+        }
+        Picture {
+            width: *width,
+            height: *height,
+            grey: moved,
+        }
+    }
+}
+
+/// Everything that does not move, averaged over each pixel and blurred by the lens.
+pub(super) fn still_part(scene: &Scene, shop: &Workshop, pixel_width_px: f64) -> Picture {
+    let [wide, high] = scene.camera.pixel_aspect;
+    let (width, height) = (
+        (scene.camera.width_px * high / wide) as usize,
+        scene.camera.height_px as usize,
+    );
+    let sub = |sample: u32| (f64::from(sample) + 0.5) / f64::from(STILL_SAMPLES) - 0.5;
+    let mut grey = Vec::with_capacity(width * height);
+    for row in 0..height {
+        for column in 0..width {
+            let places =
+                (0..STILL_SAMPLES).flat_map(|j| (0..STILL_SAMPLES).map(move |i| (sub(i), sub(j))));
+            let x_px = centre_px(column, pixel_width_px);
+            let sum: f64 = places
+                .map(|(dx, dy)| shop.still_grey(x_px + dx * pixel_width_px, as_f64(row) + dy))
+                .sum();
+            grey.push(to_f32(sum / f64::from(STILL_SAMPLES * STILL_SAMPLES)));
+        }
+    }
+    let mut picture = Picture {
+        width,
+        height,
+        grey,
+    };
+    if scene.camera.blur_px > 0.0 {
+        blur_rows(
+            &mut picture,
+            &normal_weights(scene.camera.blur_px / pixel_width_px),
+        );
+        picture = turned(&picture);
+        blur_rows(&mut picture, &normal_weights(scene.camera.blur_px));
+        picture = turned(&picture);
+    }
+    picture
+}
+
+fn blur_rows(picture: &mut Picture, weights: &[f32]) {
+    let half = (weights.len() / 2).cast_signed();
+    for line in picture.grey.chunks_exact_mut(picture.width) {
+        let before = line.to_vec();
+        for (column, grey) in line.iter_mut().enumerate() {
+            let at = |tap: usize| before[clamped(column, tap.cast_signed() - half, before.len())];
+            *grey = weights
+                .iter()
+                .enumerate()
+                .map(|(tap, weight)| weight * at(tap))
+                .sum();
+        }
+    }
+}
+
+/// Rows become columns.
+fn turned(picture: &Picture) -> Picture {
+    let Picture {
+        width,
+        height,
+        grey,
+    } = picture;
+    let grey = (0..grey.len())
+        .map(|at| grey[(at % height) * width + at / height])
+        .collect();
+    Picture {
+        width: *height,
+        height: *width,
+        grey,
+    }
+}
+
+/// The hand as a list of samples: it is in focus and at rest, whatever moves behind it.
+pub(super) fn hand(still: &Picture, shop: &Workshop, pixel_width_px: f64) -> Vec<(usize, f32)> {
+    let grey = |at: usize| {
+        shop.hand_grey(
+            centre_px(at % still.width, pixel_width_px),
+            as_f64(at / still.width),
+        )
+    };
+    (0..still.grey.len())
+        .filter_map(|at| grey(at).map(|grey| (at, to_f32(grey))))
+        .collect()
+}
+
+/// Lanczos weights for a move by a real number of samples, and the offset of the first.
+fn sinc_weights(shift: f64) -> (isize, [f32; SHAKE_TAPS]) {
+    let lobes = as_f64(SHAKE_TAPS / 2);
+    let fraction = shift - shift.floor();
+    let sinc = |t: f64| {
+        if t.abs() < 1e-9 {
+            1.0
+        } else {
+            (std::f64::consts::PI * t).sin() / (std::f64::consts::PI * t)
+        }
+    };
+    let raw: [f64; SHAKE_TAPS] = std::array::from_fn(|tap| {
+        let t = as_f64(tap) - (lobes - 1.0) - fraction;
+        if t.abs() < lobes {
+            sinc(t) * sinc(t / lobes)
+        } else {
+            0.0
+        }
+    });
+    let total: f64 = raw.iter().sum();
+    #[expect(clippy::cast_possible_truncation, reason = "a shake of some pixels")]
+    let first = (shift.floor() - (lobes - 1.0)) as isize;
+    (first, raw.map(|weight| to_f32(weight / total)))
+}
+
+fn clamped(at: usize, offset: isize, n: usize) -> usize {
+    at.saturating_add_signed(offset).min(n - 1)
+}
