@@ -221,7 +221,7 @@ impl Camera {
     fn add_body(&self, picture: &mut Picture, t_s: f64, shake_px: [f64; 2]) {
         let camera = &self.scene.camera;
         // One path a row of exposure; a global shutter has a single one. Rows of exposure are rows or columns of the display.
-        let by_column = camera.rotation_deg % 180 != 0;
+        let by_column = !camera.rotation_deg.is_multiple_of(180);
         let n_lines = if camera.readout_s == 0.0 {
             1
         } else if by_column {
@@ -306,7 +306,7 @@ impl Camera {
             if lit {
                 // Bands of a rolling shutter run along the stored rows; a picture stored on its side gets its mean instead.
                 let t_s = exposure.t_s
-                    + if camera.rotation_deg % 180 == 0 {
+                    + if camera.rotation_deg.is_multiple_of(180) {
                         self.delay_s([0.0, as_f64(row)])
                     } else {
                         0.5 * camera.readout_s

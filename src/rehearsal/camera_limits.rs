@@ -36,7 +36,7 @@ pub(super) fn check_camera(camera: &CameraScene) -> Result<(), RehearsalError> {
     } else {
         0
     };
-    let turned = camera.rotation_deg % 180 != 0 && wide != high;
+    let turned = !camera.rotation_deg.is_multiple_of(180) && wide != high;
     require(
         (32..=LARGEST_SIDE_PX).contains(&stored) && !turned,
         "camera.pixel_aspect",
@@ -72,6 +72,11 @@ pub(super) fn check_camera(camera: &CameraScene) -> Result<(), RehearsalError> {
             "give [x, y] in pixels near the picture",
         )?;
     }
+    check_light(camera)
+}
+
+/// Blur, grain, lamp and shake.
+fn check_light(camera: &CameraScene) -> Result<(), RehearsalError> {
     within(
         "camera.blur_px",
         camera.blur_px,

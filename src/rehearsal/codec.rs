@@ -114,13 +114,13 @@ impl Luma {
             #[expect(
                 clippy::cast_possible_truncation,
                 clippy::cast_sign_loss,
-                reason = "cut to 0…1023 before the cast"
+                reason = "cut to 0…1023 before the casts; by way of i32, because only that cast has a vector instruction"
             )]
-            let code =
-                (codes.black + codes.swing / 255.0 * grey + 0.5).clamp(0.0, codes.largest) as u16;
+            let code = (codes.black + codes.swing / 255.0 * grey + 0.5).clamp(0.0, codes.largest)
+                as i32 as u16;
             code
         };
-        let stored_width = if rotation_deg % 180 == 0 {
+        let stored_width = if rotation_deg.is_multiple_of(180) {
             *width
         } else {
             *height
@@ -152,7 +152,7 @@ pub(super) fn configure(
     let (camera, codec) = (&scene.camera, &scene.codec);
     let [wide, high] = camera.pixel_aspect;
     let upright = [camera.width_px * high / wide, camera.height_px];
-    let [width, height] = if camera.rotation_deg % 180 == 0 {
+    let [width, height] = if camera.rotation_deg.is_multiple_of(180) {
         upright
     } else {
         [upright[1], upright[0]]
@@ -170,10 +170,11 @@ pub(super) fn configure(
     video.set_color_primaries(color::Primaries::BT709);
     video.set_color_transfer_characteristic(color::TransferCharacteristic::BT709);
     video.set_color_range(range(codec.layout()));
-    let frames_apart = threading::Type::Slice;
+    // Several pictures at once, not several slices of one: phones write one slice, and x264 is as repeatable.
+    let kind = threading::Type::Frame;
     video.set_threading(threading::Config {
         count: codec.threads as usize,
-        ..threading::Config::kind(frames_apart)
+        ..threading::Config::kind(kind)
     });
     let mut flags = codec::Flags::BITEXACT;
     if headers_apart {

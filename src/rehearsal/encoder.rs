@@ -41,7 +41,7 @@ impl Encoder {
         };
         ffmpeg_next::init().map_err(doing("start"))?;
         // Encoders announce themselves on stderr, which belongs to whoever called us.
-        ffmpeg_next::util::log::set_level(ffmpeg_next::util::log::Level::Error);
+        ffmpeg_next::util::log::set_level(ffmpeg_next::util::log::Level::Fatal);
         let name = scene.codec.encoder();
         let found =
             encoder::find_by_name(name).ok_or(RehearsalError::EncoderMissing { encoder: name })?;

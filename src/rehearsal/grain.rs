@@ -20,7 +20,7 @@ pub(super) struct Grain {
 
 impl Grain {
     pub(super) fn new(seed: u64) -> Self {
-        let mut generator = ChaCha8Rng::seed_from_u64(seed ^ 0x6772_6169_6e);
+        let mut generator = ChaCha8Rng::seed_from_u64(seed ^ 0x0067_7261_696e);
         let deviates = (0..KEPT)
             .map(|_| StandardNormal.sample(&mut generator))
             .collect();
