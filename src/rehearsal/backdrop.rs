@@ -236,3 +236,55 @@ fn sinc_weights(shift: f64) -> (isize, [f32; SHAKE_TAPS]) {
 fn clamped(at: usize, offset: isize, n: usize) -> usize {
     at.saturating_add_signed(offset).min(n - 1)
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// A wave of eight pixels, moved by a fraction of one, against the same wave drawn there.
+    #[test]
+    fn a_moved_picture_is_the_picture_drawn_elsewhere() {
+        let wave = |shift: [f64; 2]| {
+            let at = |at: usize| {
+                let (x, y) = (as_f64(at % 40) - shift[0], as_f64(at / 40) - shift[1]);
+                to_f32(128.0 + 60.0 * (TAU * x / 8.0).sin() * (TAU * y / 11.0).cos())
+            };
+            Picture {
+                width: 40,
+                height: 30,
+                grey: (0..1200).map(at).collect(),
+            }
+        };
+        for shift in [[0.3, -0.7], [1.5, 0.0], [-2.25, 0.125]] {
+            let (moved, wanted) = (wave([0.0, 0.0]).moved(shift, 1.0), wave(shift));
+            // The middle only: beyond the edge there is nothing to move in.
+            for at in
+                (0..1200).filter(|at| (8..32).contains(&(at % 40)) && (8..22).contains(&(at / 40)))
+            {
+                let (got, wanted) = (moved.grey[at], wanted.grey[at]);
+                assert!(
+                    (got - wanted).abs() < 0.5,
+                    "moved by {shift:?}, sample {at}: wanted {wanted}, got {got}"
+                );
+            }
+        }
+    }
+
+    #[test]
+    fn shake_has_the_spread_asked_for() -> Result<(), crate::rehearsal::RehearsalError> {
+        let text = "[motion]\nperiod_s = 1\namplitude_m = 0.1\n[camera]\nwidth_px = 64\nheight_px = 64\nrate_hz = 30\n\
+                    duration_s = 1\npx_per_m = 100\nshake_px = 0.8\n";
+        let shake = Shake::new(&Scene::from_toml(text)?);
+        let n = 200_000;
+        let mean_square = (0..n)
+            .map(|i| shake.at_px(0.01 * f64::from(i))[0].powi(2))
+            .sum::<f64>()
+            / f64::from(n);
+        assert!(
+            (mean_square.sqrt() - 0.8).abs() < 0.02,
+            "rms {} px",
+            mean_square.sqrt()
+        );
+        Ok(())
+    }
+}

@@ -318,7 +318,7 @@ impl Camera {
                     to_f32(1.0 + flicker + camera.brightness_drift * t_s / camera.duration_s);
                 line.iter_mut().for_each(|grey| *grey *= gain);
             }
-            let deviates = self.grain.row(exposure.picture, row, picture.width);
+            let deviates = self.grain.row(exposure.shown, row, picture.width);
             if shot > 0.0 {
                 line.iter_mut().zip(deviates).for_each(|(grey, deviate)| {
                     *grey += (read + shot * grey.max(0.0)).sqrt() * deviate

@@ -43,4 +43,4 @@ pub use scene::{
 };
 pub use shutter::{Exposure, exposures};
 pub use storage::{CodecName, CodecScene, PixelFormat, Preset, StampKind, StampScene};
-pub use truth::{BarTruth, Box2, LawTruth, Truth};
+pub use truth::{BarTruth, LawTruth, PixelBox, Truth};

@@ -1,6 +1,8 @@
 //! When each picture is taken and which stamp it carries; lost, slipped and repeated pictures happen here.
 //!
 //! In: the scene. Out: one [`Exposure`] a written picture. Stamps are whole ticks until the container writes them.
+use std::collections::BTreeSet;
+
 use rand::SeedableRng;
 use rand_chacha::ChaCha8Rng;
 use rand_distr::{Distribution, Normal};
@@ -24,6 +26,8 @@ const LARGEST_JITTER: f64 = 0.4;
 pub struct Exposure {
     /// Index of the picture slot, counted from 0 as the camera takes pictures, lost ones included.
     pub picture: usize,
+    /// Slot of the picture that is shown: an earlier one where it is repeated.
+    pub shown: usize,
     /// True mid-exposure of row 0 of what is shown, s; frame 0 defines 0.
     pub t_s: f64,
     /// Stamp, in ticks of 1/`ticks_per_s`.
@@ -100,19 +104,25 @@ pub fn exposures(scene: &Scene) -> Vec<Exposure> {
     let times_s = true_times_s(scene, n_pictures);
     let [num, den] = scene.camera.rate_hz.fraction().unwrap_or([1, 1]);
     let ticks_per_s = scene.ticks_per_s();
+    let set = |frames: &[usize]| frames.iter().copied().collect::<BTreeSet<usize>>();
     let mishap = &scene.mishap;
+    let (dropped, slipped, repeated) = (
+        set(&mishap.drop_frames),
+        set(&mishap.slip_frames),
+        set(&mishap.repeat_frames),
+    );
     let mut written: Vec<Exposure> = Vec::new();
     let mut n_slipped = 0;
     let mut shown = 0;
     for (picture, t_s) in times_s.iter().enumerate() {
-        if picture == 0 || !mishap.repeat_frames.contains(&picture) {
+        if picture == 0 || !repeated.contains(&picture) {
             shown = picture;
         }
-        if mishap.slip_frames.contains(&picture) {
+        if slipped.contains(&picture) {
             n_slipped += 1;
             continue;
         }
-        if mishap.drop_frames.contains(&picture) {
+        if dropped.contains(&picture) {
             continue;
         }
         let slot = picture - n_slipped;
@@ -131,6 +141,7 @@ pub fn exposures(scene: &Scene) -> Vec<Exposure> {
             .map_or(stamp_ticks, |last| stamp_ticks.max(last.stamp_ticks + 1));
         written.push(Exposure {
             picture,
+            shown,
             t_s: times_s[shown],
             stamp_ticks,
         });
@@ -183,4 +194,30 @@ fn rounded(ticks: f64) -> i64 {
 )]
 fn as_f64(count: usize) -> f64 {
     count as f64
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn a_rate_given_as_a_number_is_the_fraction_it_means() {
+        for (hz, wanted) in [
+            (30.0, Some([30, 1])),
+            (29.97, Some([2997, 100])),
+            (30_000.0 / 1001.0, Some([30_000, 1001])),
+            (239.76, Some([5994, 25])),
+            (0.0, None),
+            (-30.0, None),
+            (f64::NAN, None),
+            (f64::INFINITY, None),
+        ] {
+            assert_eq!(Rate::Number(hz).fraction(), wanted, "{hz} Hz");
+        }
+        assert_eq!(
+            Rate::Fraction([60_000, 1001]).fraction(),
+            Some([60_000, 1001])
+        );
+        assert_eq!(Rate::Fraction([30, 0]).fraction(), None);
+    }
 }

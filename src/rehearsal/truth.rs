@@ -43,9 +43,9 @@ pub struct Truth {
     /// The scale bar, if there is one.
     pub scale_bar: Option<BarTruth>,
     /// The marker's box in the first picture.
-    pub marker_box_px: Box2,
+    pub marker_box_px: PixelBox,
     /// Index of the first picture in which the whole marker can be seen, and its box there; None where there is none.
-    pub first_visible: Option<(usize, Box2)>,
+    pub first_visible: Option<(usize, PixelBox)>,
     /// Ticks a second of the stamps as they were given to the container.
     pub ticks_per_s: u32,
     /// The first stamps, ticks.
@@ -54,6 +54,8 @@ pub struct Truth {
     pub mishaps: Vec<String>,
     /// Picture slot of each picture, lost ones counted.
     pub picture: Vec<usize>,
+    /// Slot of the picture that is shown: an earlier one where it is repeated.
+    pub shown: Vec<usize>,
     /// Stamp, s.
     pub stamp_s: Vec<f64>,
     /// True mid-exposure of row 0 of what is shown, s.
@@ -122,7 +124,7 @@ pub struct BarTruth {
 
 /// A box in display pixels: the centre of its top-left pixel, and its size.
 #[derive(Clone, Copy, Debug, PartialEq, Serialize, Deserialize)]
-pub struct Box2 {
+pub struct PixelBox {
     /// Left, px.
     pub x: i64,
     /// Top, px.
@@ -149,15 +151,20 @@ impl Truth {
             .iter()
             .map(|exposure| camera.is_visible(exposure.t_s))
             .collect();
+        #[expect(
+            clippy::cast_possible_truncation,
+            reason = "limits::check bounds the marker"
+        )]
+        let side = scene.marker.size_px.ceil() as i64;
         let box_px = |at: usize| {
             seen.get(at).map_or(
-                Box2 {
+                PixelBox {
                     x: 0,
                     y: 0,
                     w: 0,
                     h: 0,
                 },
-                |(px, _)| Box2::around(*px, scene.marker.size_px),
+                |(px, _)| PixelBox::around(*px, side),
             )
         };
         let ticks_per_s = scene.ticks_per_s();
@@ -210,6 +217,7 @@ impl Truth {
             first_stamps_ticks: stamps.clone().take(8).collect(),
             mishaps: mishaps(scene),
             picture: exposures.iter().map(|exposure| exposure.picture).collect(),
+            shown: exposures.iter().map(|exposure| exposure.shown).collect(),
             stamp_s: stamps.map(stamp_s).collect(),
             t_s: exposures
                 .iter()
@@ -229,6 +237,15 @@ impl Truth {
                 .collect(),
             visible,
         }
+    }
+
+    /// The marker's box in a picture of the file, by its index; None beyond the last.
+    #[must_use]
+    pub fn marker_box_at(&self, index: usize) -> Option<PixelBox> {
+        let side = self.marker_box_px.w;
+        self.marker_px
+            .get(index)
+            .map(|centre| PixelBox::around(*centre, side))
     }
 
     /// JSON with one line a key, so that a difference between two truths can be read.
@@ -287,12 +304,15 @@ impl LawTruth {
     }
 }
 
-impl Box2 {
+impl PixelBox {
     /// The whole pixels that hold a square around a centre.
-    #[expect(clippy::cast_possible_truncation, reason = "places near a picture")]
-    fn around([x, y]: [f64; 2], size_px: f64) -> Self {
-        let side = size_px.ceil() as i64;
-        let corner = |centre: f64| (centre - 0.5 * (size_px.ceil() - 1.0)).round() as i64;
+    fn around([x, y]: [f64; 2], side: i64) -> Self {
+        #[expect(
+            clippy::cast_possible_truncation,
+            clippy::cast_precision_loss,
+            reason = "places near a picture"
+        )]
+        let corner = |centre: f64| (centre - 0.5 * (side - 1) as f64).round() as i64;
         Self {
             x: corner(x),
             y: corner(y),
