@@ -665,6 +665,26 @@ mod films {
     }
 
     #[test]
+    fn a_path_that_names_no_clip_is_refused() -> Outcome {
+        let folder = tempfile::tempdir()?;
+        let scene = Scene::from_toml(SMALL)?;
+        for name in ["clip", "clip.xyzzy", ".."] {
+            let refused = rehearse(&scene, &folder.path().join(name));
+            assert!(
+                matches!(refused, Err(RehearsalError::ClipName { .. })),
+                "{name}: {refused:?}"
+            );
+        }
+        let nowhere = rehearse(&scene, &folder.path().join("missing").join("a.mp4"));
+        assert!(
+            matches!(nowhere, Err(RehearsalError::Io { .. })),
+            "{nowhere:?}"
+        );
+        assert_eq!(fs::read_dir(folder.path())?.count(), 0);
+        Ok(())
+    }
+
+    #[test]
     fn a_failed_film_leaves_the_one_that_was_there() -> Outcome {
         let folder = tempfile::tempdir()?;
         let clip = folder.path().join("kept.webm");

@@ -3,8 +3,8 @@
 //! In: a [`Scene`]. Out: a video file and, beside it, a [`Truth`] in JSON. Nothing in the pipeline uses this room; the
 //! tests, the demo and anyone who wants to know what the pipeline is worth do.
 //!
-//! The path of a picture: [`Motion`] says where the marker is, [`shutter`] when each picture is taken and which stamp it
-//! carries, [`Camera`] what the sensor sees meanwhile, [`encoder`] puts it into a file, [`truth`] writes down what was planted.
+//! The path of a picture: [`Motion`] says where the marker is, [`exposures`] when each picture is taken and which stamp it
+//! carries, [`Camera`] what the sensor sees meanwhile; an encoder puts it into a file, and [`Truth`] tells what was planted.
 //!
 //! Pixels are display pixels: x to the right, y down, the centre of the top-left pixel at (0, 0).
 

@@ -69,19 +69,27 @@ pub enum CodecName {
     Mpeg4,
 }
 
-/// Effort of the encoder.
+/// Effort of the encoder, by the words of x264 and x265.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Deserialize)]
 #[serde(rename_all = "lowercase")]
-#[allow(missing_docs, reason = "the encoders' own words, in their order")]
 pub enum Preset {
+    /// No search worth the name: fastest, largest.
     Ultrafast,
+    /// A little search.
     Superfast,
+    /// The usual one here: about what a phone's encoder does.
     Veryfast,
+    /// More reference pictures.
     Faster,
+    /// More still.
     Fast,
+    /// The encoders' own usual one.
     Medium,
+    /// For clips that must be small.
     Slow,
+    /// Slower, a few per cent smaller.
     Slower,
+    /// Slowest, smallest.
     Veryslow,
 }
 
