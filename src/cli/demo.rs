@@ -37,7 +37,11 @@ pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
         let bar = Progress::new(arguments.quiet);
         measure(&clip, &sheet, &mut |done, of| bar.tell(done, of))?
     };
-    record::write(&measurement, &repeat::film_sheet(&sheet, &clip, &folder)?, &folder)?;
+    record::write(
+        &measurement,
+        &repeat::film_sheet(&sheet, &clip, &folder)?,
+        &folder,
+    )?;
     if arguments.quiet {
         return Ok(());
     }

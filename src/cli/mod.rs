@@ -3,14 +3,14 @@
 //! Arguments pass two layers: what was typed, checked for form only, and then a [`RunSheet`](crate::run_sheet::RunSheet)
 //! that the library takes. Results go to files and a short summary to stdout; a failure is one sentence on stderr.
 
-//mod demo;
+mod demo;
 mod inspect;
 mod measure;
 mod numbers;
 mod outcome;
 mod progress;
 mod refit;
-//mod rehearse;
+mod rehearse;
 mod repeat;
 
 use clap::{CommandFactory, FromArgMatches, Parser, Subcommand};
@@ -40,8 +40,10 @@ enum Verb {
     Inspect(inspect::Arguments),
     /// The same fit and verdicts from a table of positions and times
     Refit(refit::Arguments),
-    //Rehearse(rehearse::Arguments),
-    //Demo(demo::Arguments),
+    /// Make a film with known truth from a scene
+    Rehearse(rehearse::Arguments),
+    /// Do the main job on the clip inside this program
+    Demo(demo::Arguments),
 }
 
 /// Runs one command line and returns its exit code: 0 done, 2 usage, 3 input, 4 not measurable.
@@ -50,8 +52,8 @@ pub fn run(arguments: impl Iterator<Item = OsString>) -> ExitCode {
         Verb::Measure(arguments) => measure::run(&arguments),
         Verb::Inspect(arguments) => inspect::run(&arguments),
         Verb::Refit(arguments) => refit::run(&arguments),
-        //Verb::Rehearse(arguments) => rehearse::run(&arguments),
-        //Verb::Demo(arguments) => demo::run(&arguments),
+        Verb::Rehearse(arguments) => rehearse::run(&arguments),
+        Verb::Demo(arguments) => demo::run(&arguments),
     });
     match outcome {
         Ok(()) => ExitCode::SUCCESS,

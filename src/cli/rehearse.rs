@@ -20,9 +20,13 @@ pub(super) struct Arguments {
 
 /// Makes the film and its truth.
 pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
-    let place = |error: RehearsalError| Failure::input(format!("{}: {error}", arguments.scene.display()));
+    let place =
+        |error: RehearsalError| Failure::input(format!("{}: {error}", arguments.scene.display()));
     let text = std::fs::read_to_string(&arguments.scene).map_err(|error| {
-        Failure::input(format!("{}: the scene cannot be read ({error}); check its name", arguments.scene.display()))
+        Failure::input(format!(
+            "{}: the scene cannot be read ({error}); check its name",
+            arguments.scene.display()
+        ))
     })?;
     let scene = Scene::from_toml(&text).map_err(place)?;
     rehearse(&scene, &arguments.out).map_err(place)?;
@@ -30,5 +34,9 @@ pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
         return Ok(());
     }
     let truth = arguments.out.with_extension("truth.json");
-    print(&format!("Film: {}\nTruth: {}\n", arguments.out.display(), truth.display()))
+    print(&format!(
+        "Film: {}\nTruth: {}\n",
+        arguments.out.display(),
+        truth.display()
+    ))
 }

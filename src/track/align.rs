@@ -128,7 +128,10 @@ impl Aligner {
                 return None;
             }
             if step[0].hypot(step[1]) < SETTLED_PX {
-                let noise2 = self.unexplained(&shifted, &fitted).max(LEAST_NOISE * LEAST_NOISE) / (gain * gain);
+                let noise2 = self
+                    .unexplained(&shifted, &fitted)
+                    .max(LEAST_NOISE * LEAST_NOISE)
+                    / (gain * gain);
                 return Some(Aligned {
                     corner_px,
                     covariance_px2: self.shift_covariance.map(|entry| entry * noise2),
@@ -303,7 +306,9 @@ mod tests {
             "{found:?}"
         );
         let floor = LEAST_NOISE * LEAST_NOISE;
-        assert!((found.covariance_px2[0] / (floor * aligner.shift_covariance()[0]) - 1.0).abs() < 1e-3);
+        assert!(
+            (found.covariance_px2[0] / (floor * aligner.shift_covariance()[0]) - 1.0).abs() < 1e-3
+        );
     }
 
     #[test]
