@@ -35,7 +35,8 @@ pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
     let sheet = RunSheet::from_toml(SHEET).map_err(crate::measurement::MeasureError::from)?;
     let measurement = {
         let bar = Progress::new(arguments.quiet);
-        measure(&clip, &sheet, &mut |done, of| bar.tell(done, of))?
+        measure(&clip, &sheet, &mut |done, of| bar.tell(done, of))
+            .map_err(|error| Failure::of_file(&error, &clip))?
     };
     record::write(
         &measurement,

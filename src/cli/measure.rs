@@ -31,7 +31,7 @@ pub(super) struct Arguments {
     #[arg(long, value_name = "PX", value_parser = one, allow_hyphen_values = true)]
     end_u: Option<f64>,
     /// Frame the boxes were drawn in, from 0
-    #[arg(long, value_name = "N")]
+    #[arg(long, value_name = "N", allow_hyphen_values = true)]
     at_frame: Option<usize>,
     /// A patch that stands still, to take camera shake off
     #[arg(long, value_name = "X,Y,W,H", value_parser = four, allow_hyphen_values = true)]
@@ -147,7 +147,8 @@ pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
     record::check_destination(&folder)?;
     let measurement = {
         let bar = Progress::new(arguments.output.quiet);
-        measure(&clip, &sheet, &mut |done, of| bar.tell(done, of))?
+        measure(&clip, &sheet, &mut |done, of| bar.tell(done, of))
+            .map_err(|error| Failure::of_file(&error, &clip))?
     };
     let run_toml = repeat::film_sheet(&sheet, &clip, &folder)?;
     arguments.output.deliver(&measurement, &run_toml, &folder)

@@ -41,6 +41,19 @@ impl Failure {
         }
     }
 
+    /// A measurement's error, with the file it concerns in front where the error itself does not name it.
+    pub(super) fn of_file(error: &MeasureError, file: &std::path::Path) -> Self {
+        let sentence = if error.names_file() {
+            error.to_string()
+        } else {
+            format!("{}: {error}", file.display())
+        };
+        Self::Said {
+            sentence,
+            code: code(error),
+        }
+    }
+
     /// The argument parser's page, cut to its first paragraph: one sentence, and where to read on.
     pub(super) fn from_clap(error: clap::Error) -> Self {
         use clap::error::ErrorKind::{
@@ -85,14 +98,9 @@ impl Failure {
 
 impl From<MeasureError> for Failure {
     fn from(error: MeasureError) -> Self {
-        let code = match error.fault() {
-            Fault::Usage => 2,
-            Fault::Input => 3,
-            Fault::NotMeasurable => 4,
-        };
         Self::Said {
             sentence: error.to_string(),
-            code,
+            code: code(&error),
         }
     }
 }
@@ -100,6 +108,14 @@ impl From<MeasureError> for Failure {
 impl From<RecordError> for Failure {
     fn from(error: RecordError) -> Self {
         Self::usage(error.to_string())
+    }
+}
+
+fn code(error: &MeasureError) -> u8 {
+    match error.fault() {
+        Fault::Usage => 2,
+        Fault::Input => 3,
+        Fault::NotMeasurable => 4,
     }
 }
 

@@ -35,7 +35,7 @@ pub(super) fn run_on(
 ) -> Result<(), Failure> {
     let folder = output.folder(table);
     record::check_destination(&folder)?;
-    let measurement = refit(table, sheet)?;
+    let measurement = refit(table, sheet).map_err(|error| Failure::of_file(&error, table))?;
     let run_toml = repeat::table_sheet(sheet, table, &folder)?;
     output.deliver(&measurement, &run_toml, &folder)
 }

@@ -40,6 +40,16 @@ pub enum MeasureError {
     /// The motion.
     #[error(transparent)]
     Motion(#[from] MotionError),
+    /// The marker stays where it is.
+    #[error(
+        "the marker does not move: its path is {extent_px:.2} px long, and at least {least_px} px are needed; film the swing, and draw the box around what swings"
+    )]
+    NoMotion {
+        /// Length of the path along its axis, display px.
+        extent_px: f64,
+        /// Least length, display px.
+        least_px: f64,
+    },
     /// The marker went away and did not come back.
     #[error(
         "the marker was lost at frame {frame} ({t_s:.2} s) and not found again in the {n_after} frames after it; give --to {t_s:.2} to measure the part before, or film with the whole travel in view"
@@ -98,9 +108,21 @@ impl MeasureError {
             Self::Footage(_) | Self::Table { .. } => Fault::Input,
             Self::Track(error) => track_fault(error),
             Self::Scale(_)
+            | Self::NoMotion { .. }
             | Self::Motion(_)
             | Self::MarkerLeft { .. }
             | Self::MarkerLost { .. } => Fault::NotMeasurable,
+        }
+    }
+    /// True where the message names the file it concerns.
+    #[must_use]
+    pub fn names_file(&self) -> bool {
+        match self {
+            Self::Footage(FootageError::CaptureRate { .. }) => false,
+            Self::Footage(_) | Self::Table { .. } | Self::Track(TrackError::Footage(_)) => true,
+            // What was typed is wrong whatever the file.
+            Self::Sheet(_) | Self::Bar(_) => true,
+            _ => false,
         }
     }
 }

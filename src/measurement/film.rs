@@ -163,6 +163,17 @@ impl Film {
             .collect();
         part.check_seen(&path_px, &times)?;
         let axis = motion_axis(&seen)?;
+        let along: Vec<f64> = seen
+            .iter()
+            .map(|&p_px| axis.along_and_off_px(p_px)[0])
+            .collect();
+        let (low, high) = ends(&along);
+        if high - low < LEAST_TRAVEL_PX {
+            return Err(MeasureError::NoMotion {
+                extent_px: high - low,
+                least_px: LEAST_TRAVEL_PX,
+            });
+        }
         Ok(Self {
             track,
             orientation: facts.orientation,
@@ -186,12 +197,21 @@ impl Film {
         let direction = self.orientation.coded_direction(self.scale.axis.direction);
         // A coded px along the axis is this many display px long (pixels need not be square).
         let display_px_per_px = 1.0 / direction[0].hypot(direction[1]);
+        let usual_u_px = self.usual_u_px(direction);
         let rows = (0..self.times.t_s.len()).map(|frame| {
             let sighting = self.track.marker[frame]
                 .seen()
                 .filter(|_| self.path_px[frame].is_some());
             let metres = self.path_px[frame].map(|p_px| self.scale.metres_from_px(p_px));
-            let u_px = sighting.map(|sighting| sighting.u_along_px(direction) * display_px_per_px);
+            // The start frame matches itself: what it leaves over says nothing of how well it is placed.
+            let own = |sighting: &Sighting| {
+                if frame == run.at_frame {
+                    usual_u_px
+                } else {
+                    sighting.u_along_px(direction).max(0.5 * usual_u_px)
+                }
+            };
+            let u_px = sighting.map(|sighting| own(sighting) * display_px_per_px);
             let outside = self.times.repeated[frame] || !part.holds(self.times.t_s[frame]);
             RecordRow {
                 frame,
@@ -212,6 +232,20 @@ impl Film {
             }
         });
         Ok(rows.collect())
+    }
+
+    /// Median standard uncertainty of the sightings along a direction, coded px.
+    fn usual_u_px(&self, direction: [f64; 2]) -> f64 {
+        let seen = self
+            .track
+            .marker
+            .iter()
+            .filter_map(|outcome| outcome.seen());
+        let mut all: Vec<f64> = seen
+            .map(|sighting| sighting.u_along_px(direction))
+            .collect();
+        all.sort_by(f64::total_cmp);
+        all.get(all.len() / 2).copied().unwrap_or(0.0)
     }
 
     /// When the marker's row of the sensor was read, s of capture time.
@@ -355,6 +389,8 @@ struct Part {
     to_s: f64,
 }
 
+/// Least length of the marker's path, px: a swing below it is lost in what compression does to a picture at rest.
+const LEAST_TRAVEL_PX: f64 = 1.0;
 /// Share of a part's frames from which a marker that never comes back counts as having left.
 const LEFT_SHARE: f64 = 0.1;
 /// Share of a part's frames in which the marker must be found.
