@@ -6,5 +6,7 @@ mod coverage;
 mod dual;
 #[path = "motion/nist_strd.rs"]
 mod nist_strd;
+#[path = "motion/planted.rs"]
+mod planted;
 #[path = "motion/record.rs"]
 mod record;

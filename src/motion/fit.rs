@@ -194,8 +194,7 @@ impl<'a> Plain<'a> {
     fn is_a_motion(&self, spread: &Spread) -> Result<(), MotionError> {
         let (amplitude_m, residual_m) = (self.sinusoid.amplitude_m, spread.diagnosis.rms_m);
         let alike = spread.diagnosis.autocorrelation_lag1 > APERIODIC_LAG1;
-        let gained = self.weighted_scatter() - self.solution.sum_of_squares;
-        let significant = gained > least_gain(self.used.len()) * self.solution.residual_variance() * spread.enlargement.near_omega;
+        let significant = stands_out(self.solution.sum_of_squares / self.weighted_scatter(), self.used.len(), spread.diagnosis.n_effective);
         let aperiodic = alike && residual_m > APERIODIC_REL * amplitude_m;
         if aperiodic || self.sinusoid.decay_rate_per_s > self.sinusoid.omega_rad_per_s || (alike && !significant) {
             return Err(MotionError::NoOscillation { amplitude_m, residual_m });
@@ -212,10 +211,7 @@ impl<'a> Plain<'a> {
 
     fn is_long_and_dense_enough(&self) -> Result<(), MotionError> {
         let frequency_hz = self.sinusoid.omega_rad_per_s / TAU;
-        let rate_hz = 1.0 / self.used.interval_s();
-        if frequency_hz * MIN_READINGS_PER_CYCLE > rate_hz {
-            return Err(MotionError::AboveNyquist { frequency_hz, rate_hz, rate_needed_hz: (READINGS_PER_CYCLE_WANTED * frequency_hz).ceil() });
-        }
+        dense_enough(self.used.interval_s(), frequency_hz)?;
         long_enough(self.used.span_s(), frequency_hz)
     }
 
@@ -238,6 +234,14 @@ impl<'a> Plain<'a> {
     }
 }
 
+fn dense_enough(interval_s: f64, frequency_hz: f64) -> Result<(), MotionError> {
+    let rate_hz = 1.0 / interval_s;
+    if frequency_hz * MIN_READINGS_PER_CYCLE > rate_hz {
+        return Err(MotionError::AboveNyquist { frequency_hz, rate_hz, rate_needed_hz: (READINGS_PER_CYCLE_WANTED * frequency_hz).ceil() });
+    }
+    Ok(())
+}
+
 fn long_enough(span_s: f64, frequency_hz: f64) -> Result<(), MotionError> {
     let cycles = span_s * frequency_hz;
     if cycles < MIN_CYCLES {
@@ -247,14 +251,16 @@ fn long_enough(span_s: f64, frequency_hz: f64) -> Result<(), MotionError> {
     Ok(())
 }
 
-/// Gain in the sum of squares, in variances, that the best of all starts reaches in pure noise once in 1/[`FALSE_MOTION`] records.
+/// Does the best of all starts leave less of the sum of squares than pure noise lets it once in 1/[`FALSE_MOTION`] records?
 ///
-/// A start gains χ² with 2 degrees of freedom, which exceeds g with probability e^(−g/2).
-fn least_gain(n_readings: usize) -> f64 {
-    2.0 * (TRIALS_PER_READING * n_readings as f64 / FALSE_MOTION).ln()
+/// One start leaves a part of at most q in a record of n independent readings with probability q^((n − 3)/2), two of them spent on A and φ
+/// and one on c; (n − 5)/2 also pays for the refinement of γ and ω.
+fn stands_out(left: f64, n_readings: usize, n_effective: f64) -> bool {
+    let trials = TRIALS_PER_READING * n_readings as f64;
+    0.5 * (n_effective - 5.0).max(1.0) * -left.ln() > (trials / FALSE_MOTION).ln()
 }
 
-/// What to say where the fit itself failed: noise and a record too short are the usual causes, and the scan knows them.
+/// What to say where the fit itself failed: noise, too short a record and too low a rate are the usual causes, and the scan knows them.
 fn why_not_fitted(readings: &Readings, starts: &[Guess], error: MotionError) -> MotionError {
     let n = readings.len() as f64;
     let Some(best) = starts.first() else {
@@ -263,11 +269,12 @@ fn why_not_fitted(readings: &Readings, starts: &[Guess], error: MotionError) -> 
     if !matches!(error, MotionError::NotFitted(_)) {
         return error;
     }
-    if n * best.explained < least_gain(readings.len()) * (1.0 - best.explained) {
+    if !stands_out(1.0 - best.explained, readings.len(), n) {
         let left: f64 = readings.tau_s.iter().zip(&readings.x_m).map(|(tau, x)| (x - best.sinusoid.position_m(*tau)).powi(2)).sum();
         return MotionError::NoMotion { amplitude_m: best.sinusoid.amplitude_m, noise_m: (left / n).sqrt() };
     }
-    long_enough(readings.span_s(), best.sinusoid.omega_rad_per_s / TAU).err().unwrap_or(error)
+    let frequency_hz = best.sinusoid.omega_rad_per_s / TAU;
+    long_enough(readings.span_s(), frequency_hz).and_then(|()| dense_enough(readings.interval_s(), frequency_hz)).err().unwrap_or(error)
 }
 
 fn assemble(records: &[PositionRecord], belongs: &[bool], plain: &Plain, spread: &Spread, laws: Vec<LawTrial>) -> MotionFit {

@@ -14,8 +14,9 @@ use nalgebra::{DMatrix, DVector, Dyn, Owned};
 
 /// A minimum is accepted where the relative offset is below this: the estimate is then within 1e-6 of the radius of its confidence region.
 const RELATIVE_OFFSET_MAX: f64 = 1e-6;
-/// Or where a full Gauss–Newton step moves no parameter by more than this part of its scale: fits whose residuals are rounding errors.
-const STEP_MAX_REL: f64 = 1e-9;
+/// Or where a full Gauss–Newton step would move the model by less than this part of what the parameters contribute to it: fits whose residuals
+/// are rounding errors. (A test on the parameters themselves would never pass for one that is 0.)
+const STEP_MAX_REL: f64 = 1e-12;
 /// Runs of the trust region; each takes its scale from where the last one stopped. No NIST set needs a second.
 const MAX_RUNS: usize = 8;
 /// Evaluations a run may take for each parameter. Bennett5 takes a thousand in all.
@@ -42,7 +43,7 @@ pub trait Residuals {
 pub enum Ending {
     /// The residual is orthogonal to the tangent plane, to a millionth of its own scatter.
     Orthogonal,
-    /// A further step would not change the parameters: the residuals are rounding errors.
+    /// A further step would not change the model: the residuals are rounding errors.
     StepNegligible,
 }
 
@@ -234,6 +235,8 @@ struct Tangent {
     covariance_factor: DMatrix<f64>,
     /// ‖Qᵀr‖: the part of the residual that a step in the tangent plane would remove.
     removable: f64,
+    /// Largest ‖∂r/∂pⱼ‖·|pⱼ|: the size of the model, in the residuals' units.
+    size: f64,
 }
 
 /// QR of the Jacobian with columns scaled to length one: normal equations would lose half the digits.
@@ -255,7 +258,8 @@ fn tangent<P: Residuals>(problem: &P, parameters: &[f64], residuals: &[f64]) -> 
         }
     }
     let finite = step.iter().chain(covariance_factor.iter()).all(|v| v.is_finite());
-    finite.then(|| Tangent { step, covariance_factor, removable: along.norm() })
+    let size = length.iter().zip(parameters).map(|(l, p)| l * p.abs()).fold(0.0, f64::max);
+    finite.then(|| Tangent { step, covariance_factor, removable: along.norm(), size })
 }
 
 /// Orthonormal columns (n × p) that span the tangent plane at `parameters`: what a fit takes out of the residuals.
@@ -308,7 +312,7 @@ fn polish<P: Residuals>(problem: &P, start: &[f64], enough: f64, n_runs: usize) 
         (parameters, residuals, sum, plane) = (next, next_residuals, next_sum, next_plane);
     }
     let relative_offset = offset(sum, plane.removable);
-    let step_negligible = plane.step.iter().zip(own_scale(&parameters)).all(|(d, s)| d.abs() <= STEP_MAX_REL * s);
+    let step_negligible = plane.removable <= STEP_MAX_REL * plane.size;
     let ending = match (relative_offset <= RELATIVE_OFFSET_MAX, step_negligible) {
         (true, _) => Ending::Orthogonal,
         (false, true) => Ending::StepNegligible,

@@ -268,3 +268,88 @@ impl Ledger<'_> {
         value + (end - value).signum() * (end - value).hypot(k * extra2.sqrt())
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use std::error::Error;
+
+    /// The tables have 13 digits.
+    const TABLE_TOL_REL: f64 = 1e-10;
+
+    type Outcome = Result<(), Box<dyn Error>>;
+
+    fn assert_close(got: f64, want: f64, what: &str) {
+        assert!((got / want - 1.0).abs() < TABLE_TOL_REL, "{what}: got {got:e}, want {want:e}");
+    }
+
+    fn table(text: &str) -> Vec<Vec<f64>> {
+        text.lines().skip(1).map(|line| line.split(',').map(|cell| cell.parse().unwrap_or(f64::NAN)).collect()).collect()
+    }
+
+    #[test]
+    fn damping_relations_hold_from_weak_to_strong() {
+        for row in table(include_str!("../../fixtures/reference/oscillation/damping_relations.csv")) {
+            let zeta = row[0];
+            let figures = Figures { gamma: zeta, omega: (1.0 - zeta * zeta).sqrt() };
+            let what = format!("ζ = {zeta}");
+            assert_close(figures.damping_ratio(), zeta, &what);
+            assert_close(figures.log_decrement(), row[1], &what);
+            assert_close(figures.quality_factor(), row[3], &what);
+            assert_close(figures.energy_loss(), row[5], &what);
+            assert_close(figures.period() / figures.undamped_period(), row[8], &what);
+            assert_close(figures.half_life() / figures.period(), row[10], &what);
+            // 1e6 (T_d/T_0 − 1): the table keeps the digits that the ratio has lost.
+            assert_close(1e6 * figures.period_shift() / figures.undamped_period(), row[9], &what);
+        }
+    }
+
+    #[test]
+    fn the_inverse_of_the_decrement_holds() {
+        for row in table(include_str!("../../fixtures/reference/oscillation/decrement_inverse.csv")) {
+            let decrement = -row[1].ln() / row[0];
+            let figures = Figures { gamma: decrement, omega: TAU };
+            assert_close(figures.log_decrement(), row[2], "δ");
+            assert_close(figures.damping_ratio(), row[3], "ζ");
+            assert_close(figures.quality_factor(), row[5], "Q");
+        }
+    }
+
+    #[test]
+    fn the_textbook_example_comes_out() -> Outcome {
+        // 10 lbf on 30 lbf/in with 0.12 lbf·s/in, g = 386 in/s².
+        let (mass, stiffness, resistance) = (10.0 / 386.0, 30.0, 0.12);
+        let gamma: f64 = resistance / (2.0 * mass);
+        let figures = Figures { gamma, omega: (stiffness / mass - gamma * gamma).sqrt() };
+        let text = include_str!("../../fixtures/reference/oscillation/textbook_example.csv");
+        let value = |key: &str| -> Result<f64, Box<dyn Error>> {
+            let line = text.lines().find(|line| line.starts_with(key)).ok_or("no such row")?;
+            Ok(line.split(',').nth(1).ok_or("no value")?.parse()?)
+        };
+        assert_close(figures.undamped(), value("omega_n")?, "ω_0");
+        assert_close(figures.damping_ratio(), value("zeta")?, "ζ");
+        assert_close(figures.log_decrement(), value("log_decrement")?, "δ");
+        assert_close(figures.log_decrement().exp(), value("ratio")?, "amplitude ratio");
+        Ok(())
+    }
+
+    #[test]
+    fn slopes_agree_with_differences() {
+        let at = Figures { gamma: 0.4, omega: 5.0 };
+        type Pair = (fn(&Figures) -> f64, [f64; 2]);
+        let pairs: [Pair; 6] = [
+            (Figures::period, at.period_slope()),
+            (Figures::undamped_period, at.undamped_period_slope()),
+            (Figures::damping_ratio, at.damping_ratio_slope()),
+            (Figures::log_decrement, at.log_decrement_slope()),
+            (Figures::quality_factor, at.quality_factor_slope()),
+            (Figures::energy_loss, at.energy_loss_slope()),
+        ];
+        let step = 1e-5;
+        for (i, (of, slope)) in pairs.into_iter().enumerate() {
+            let gamma = (of(&Figures { gamma: at.gamma + step, ..at }) - of(&Figures { gamma: at.gamma - step, ..at })) / (2.0 * step);
+            let omega = (of(&Figures { omega: at.omega + step, ..at }) - of(&Figures { omega: at.omega - step, ..at })) / (2.0 * step);
+            assert!((gamma - slope[0]).abs() < 1e-7 && (omega - slope[1]).abs() < 1e-7, "figure {i}: {gamma} {omega} against {slope:?}");
+        }
+    }
+}
