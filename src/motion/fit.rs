@@ -5,7 +5,7 @@
 
 use super::guess::{Guess, guesses};
 use super::laws::{self, LawTrial, Sinusoid, SinusoidProblem, Weighted};
-use super::least_squares::{LeastSquaresError, Solution, minimise, refine, tangent_basis};
+use super::least_squares::{LeastSquaresError, Patience, Solution, minimise, refine, tangent_basis};
 use super::noise::{self, Enlargement, ResidualDiagnosis, Residue};
 use super::profile::Profile;
 use super::readings::{MIN_POSITIONS, Readings, median};
@@ -153,7 +153,7 @@ impl<'a> Plain<'a> {
     fn round(used: &'a Readings, start: Sinusoid) -> Result<Self, LeastSquaresError> {
         let weight_per_m: Vec<f64> = start.sigma_m(used).iter().map(|s| 1.0 / s).collect();
         let problem = SinusoidProblem { readings: used, weight_per_m: &weight_per_m, held_decay_rate_per_s: None };
-        let solution = refine(&problem, &start.parameters()).or_else(|_| minimise(&problem, &start.parameters(), Some(&start.scale(used.span_s()))))?;
+        let solution = refine(&problem, &start.parameters()).or_else(|_| minimise(&problem, &start.parameters(), Some(&start.scale(used.span_s())), Patience::Short))?;
         let sinusoid = Sinusoid::from_parameters(problem.all_parameters(&solution.parameters));
         Ok(Self { used, weight_per_m, sinusoid, solution })
     }

@@ -18,11 +18,11 @@ const RELATIVE_OFFSET_MAX: f64 = 1e-6;
 /// are rounding errors. (A test on the parameters themselves would never pass for one that is 0.)
 const STEP_MAX_REL: f64 = 1e-12;
 /// Runs of the trust region; each takes its scale from where the last one stopped. No NIST set needs a second.
-const MAX_RUNS: usize = 8;
-/// Evaluations a run may take for each parameter. Bennett5 takes a thousand in all.
-const PATIENCE: usize = 2000;
+const MAX_RUNS: usize = 3;
 /// Polishing steps; they stop by themselves when the gradient no longer falls.
 const MAX_POLISH_STEPS: usize = 40;
+/// A step that leaves more than this part of what it should remove is slow.
+const SLOW: f64 = 0.3;
 /// Tolerance handed to the trust region: the rounding of a double, so that it stops only where it can do no more.
 const TRUST_REGION_TOL: f64 = f64::EPSILON;
 
@@ -36,6 +36,24 @@ pub trait Residuals {
     fn residuals(&self, parameters: &[f64], out: &mut [f64]);
     /// Writes ∂rᵢ/∂pⱼ into `out` (n_residuals × number of parameters).
     fn jacobian(&self, parameters: &[f64], out: &mut DMatrix<f64>);
+}
+
+/// How long to look for a minimum.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Patience {
+    /// A start of the right kind: 20 evaluations for each parameter. A record that is no oscillation is then refused in a second, not a minute.
+    Short,
+    /// A start that may be wrong by orders of magnitude: 2000 evaluations for each parameter. Bennett5 takes a thousand in all.
+    Long,
+}
+
+impl Patience {
+    fn evaluations_per_parameter(self) -> usize {
+        match self {
+            Self::Short => 20,
+            Self::Long => 2000,
+        }
+    }
 }
 
 /// By which test a minimum was accepted.
@@ -119,13 +137,13 @@ pub enum LeastSquaresError {
 /// # Source
 /// [Levenberg, Marquardt, Moré](crate::sources::LevenbergMarquardt); the test is the relative offset of
 /// [Bates and Watts](crate::sources::BatesWatts81). Checked against [NIST's certified results](crate::sources::NistStrd) (`tests/motion.rs`).
-pub fn minimise<P: Residuals>(problem: &P, start: &[f64], scale: Option<&[f64]>) -> Result<Solution, LeastSquaresError> {
+pub fn minimise<P: Residuals>(problem: &P, start: &[f64], scale: Option<&[f64]>, patience: Patience) -> Result<Solution, LeastSquaresError> {
     check(problem, start)?;
     let mut parameters = start.to_vec();
     let mut last = Err(LeastSquaresError::NotConverged { relative_offset: f64::INFINITY });
     for run in 1..=MAX_RUNS {
         let unit = scale.map_or_else(|| own_scale(&parameters), <[f64]>::to_vec);
-        let stopped = trust_region(problem, &parameters, &unit);
+        let stopped = trust_region(problem, &parameters, &unit, patience);
         let settled = stopped == parameters;
         parameters = stopped;
         let polished = polish(problem, &parameters, 0.0, run);
@@ -148,6 +166,14 @@ pub fn minimise<P: Residuals>(problem: &P, start: &[f64], scale: Option<&[f64]>)
 pub fn refine<P: Residuals>(problem: &P, start: &[f64]) -> Result<Solution, LeastSquaresError> {
     check(problem, start)?;
     polish(problem, start, RELATIVE_OFFSET_MAX, 0)
+}
+
+/// Goes downhill for one short run of the trust region from `start` and returns where it stopped, without a verdict: a step of an
+/// iteration that judges itself, as a reweighted fit does.
+///
+/// * `scale`: as in [`minimise`].
+pub fn advance<P: Residuals>(problem: &P, start: &[f64], scale: &[f64]) -> Vec<f64> {
+    trust_region(problem, start, scale, Patience::Short)
 }
 
 /// The door: enough residuals, and finite ones.
@@ -173,13 +199,13 @@ fn sum_of_squares<P: Residuals>(problem: &P, parameters: &[f64]) -> (Vec<f64>, f
 }
 
 /// One run of the trust region, in parameters divided by `unit`. Where it stops is judged by [`polish`], whatever it says itself.
-fn trust_region<P: Residuals>(problem: &P, start: &[f64], unit: &[f64]) -> Vec<f64> {
+fn trust_region<P: Residuals>(problem: &P, start: &[f64], unit: &[f64], patience: Patience) -> Vec<f64> {
     let scaled = Scaled { problem, unit, at: DVector::from_iterator(start.len(), start.iter().zip(unit).map(|(p, s)| p / s)) };
     let (scaled, _report) = LevenbergMarquardt::new()
         .with_tol(TRUST_REGION_TOL)
         .with_gtol(TRUST_REGION_TOL)
         .with_scale_diag(false)
-        .with_patience(PATIENCE)
+        .with_patience(patience.evaluations_per_parameter())
         .minimize(scaled);
     scaled.parameters(&scaled.at)
 }
@@ -284,6 +310,24 @@ fn scaled_jacobian<P: Residuals>(problem: &P, parameters: &[f64]) -> Option<(DMa
     Some((jacobian, length))
 }
 
+/// Parameters with all that a step from them needs.
+struct Point {
+    parameters: Vec<f64>,
+    residuals: Vec<f64>,
+    sum: f64,
+    plane: Tangent,
+}
+
+impl Point {
+    /// The point `part` of a step away; None where the model is not finite there.
+    fn beyond<P: Residuals>(problem: &P, from: &[f64], step: &DVector<f64>, part: f64) -> Option<Self> {
+        let parameters: Vec<f64> = from.iter().zip(step.iter()).map(|(p, d)| p + part * d).collect();
+        let (residuals, sum) = sum_of_squares(problem, &parameters);
+        let plane = if sum.is_finite() { tangent(problem, &parameters, &residuals) } else { None }?;
+        Some(Self { parameters, residuals, sum, plane })
+    }
+}
+
 /// Gauss–Newton steps while the removable part of the residual falls and the relative offset is above `enough`, then the test of convergence.
 fn polish<P: Residuals>(problem: &P, start: &[f64], enough: f64, n_runs: usize) -> Result<Solution, LeastSquaresError> {
     let n_parameters = start.len();
@@ -300,16 +344,13 @@ fn polish<P: Residuals>(problem: &P, start: &[f64], enough: f64, n_runs: usize) 
         if offset(sum, plane.removable) <= enough {
             break;
         }
-        let next: Vec<f64> = parameters.iter().zip(plane.step.iter()).map(|(p, d)| p + d).collect();
-        let (next_residuals, next_sum) = sum_of_squares(problem, &next);
-        if !next_sum.is_finite() {
-            break;
-        }
-        let Some(next_plane) = tangent(problem, &next, &next_residuals) else { break };
-        if next_plane.removable >= plane.removable {
-            break;
-        }
-        (parameters, residuals, sum, plane) = (next, next_residuals, next_sum, next_plane);
+        let full = Point::beyond(problem, &parameters, &plane.step, 1.0);
+        // Where the residuals are large and the model bends, full steps overshoot and swing about the minimum; half steps then do not.
+        let slow = full.as_ref().is_none_or(|point| point.plane.removable > SLOW * plane.removable);
+        let half = if slow { Point::beyond(problem, &parameters, &plane.step, 0.5) } else { None };
+        let best = full.into_iter().chain(half).min_by(|a, b| a.plane.removable.total_cmp(&b.plane.removable));
+        let Some(next) = best.filter(|point| point.plane.removable < plane.removable) else { break };
+        Point { parameters, residuals, sum, plane } = next;
     }
     let relative_offset = offset(sum, plane.removable);
     let step_negligible = plane.removable <= STEP_MAX_REL * plane.size;

@@ -4,7 +4,7 @@
 //! parameters has grown by t²·s²·(enlargement): the ends of the interval, unequal where the sum is no parabola in γ.
 
 use super::laws::{Sinusoid, SinusoidProblem};
-use super::least_squares::{minimise, refine};
+use super::least_squares::{Patience, minimise, refine};
 use super::readings::Readings;
 
 /// An end is found when the distance is right to this part of the limit: a ten-thousandth of the interval's width.
@@ -71,7 +71,7 @@ impl Profile<'_> {
         let from = start.parameters();
         let free = problem.free_parameters(std::array::from_fn(|i| from[i] + shift * self.slope[i]));
         let scale = problem.free_parameters(self.best.scale(self.readings.span_s()));
-        let solution = refine(&problem, &free).or_else(|_| minimise(&problem, &free, Some(&scale))).ok()?;
+        let solution = refine(&problem, &free).or_else(|_| minimise(&problem, &free, Some(&scale), Patience::Short)).ok()?;
         let growth = solution.sum_of_squares - self.sum_of_squares;
         let distance = (growth.max(0.0) / self.variance).sqrt().copysign(gamma - self.best.decay_rate_per_s);
         distance.is_finite().then(|| (distance, Sinusoid::from_parameters(problem.all_parameters(&solution.parameters))))

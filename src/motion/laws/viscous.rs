@@ -1,7 +1,7 @@
 //! Viscous loss: x(τ) = A e^(−γτ) cos(ωτ + φ) + c; with γ held at 0, no loss.
 
 use super::{Law, LawFit, Weighted};
-use crate::motion::least_squares::{LeastSquaresError, Residuals, minimise, refine};
+use crate::motion::least_squares::{LeastSquaresError, Patience, Residuals, minimise, refine};
 use crate::motion::readings::Readings;
 use nalgebra::DMatrix;
 
@@ -74,12 +74,13 @@ pub(super) fn fit(weighted: &Weighted, held_decay_rate_per_s: Option<f64>) -> Re
     let problem = SinusoidProblem { readings, weight_per_m, held_decay_rate_per_s };
     let mut from = start.parameters();
     if let Some(gamma) = held_decay_rate_per_s {
-        // The mean amplitude of the record, not the first: the best undamped sinusoid runs through its middle.
-        from[0] *= (-0.5 * (start.decay_rate_per_s - gamma) * readings.span_s()).exp();
+        // The projection on a sinusoid that decays at the held rate: the mean of what the envelopes differ by.
+        let n = readings.len() as f64;
+        from[0] *= readings.tau_s.iter().map(|tau| (-(start.decay_rate_per_s - gamma) * tau).exp()).sum::<f64>() / n;
     }
     let scale = problem.free_parameters(start.scale(readings.span_s()));
     let free = problem.free_parameters(from);
-    let solution = refine(&problem, &free).or_else(|_| minimise(&problem, &free, Some(&scale)))?;
+    let solution = refine(&problem, &free).or_else(|_| minimise(&problem, &free, Some(&scale), Patience::Long))?;
     let fitted = Sinusoid::from_parameters(problem.all_parameters(&solution.parameters));
     let mut u = solution.standard_uncertainties().into_iter().map(|u| u * enlargement.sqrt());
     let [amplitude, phase, gamma, omega, centre] = fitted.parameters();
