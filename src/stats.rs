@@ -5,7 +5,9 @@
 //! distribution function, kept inside a bracket. All agree with tables computed in 40-digit arithmetic to 1e-10 relative
 //! (`fixtures/reference/stats/`).
 
-use statrs::distribution::{ChiSquared, Continuous, ContinuousCDF, FisherSnedecor, Normal, StudentsT};
+use statrs::distribution::{
+    ChiSquared, Continuous, ContinuousCDF, FisherSnedecor, Normal, StudentsT,
+};
 use statrs::function::beta::checked_beta_reg;
 
 /// Steps after which a quantile is as exact as its distribution function: bisection alone would halve 1e300 to nothing in these.
@@ -77,13 +79,20 @@ pub fn chi_squared_cdf(x: f64, nu: f64) -> f64 {
 /// χ² quantile of probability p in 0…1 with `nu` > 0 degrees of freedom; 0 where `nu` ≤ 0.
 #[must_use]
 pub fn chi_squared_quantile(p: f64, nu: f64) -> f64 {
-    ChiSquared::new(nu).map_or(0.0, |dist| positive_quantile(p, |x| dist.cdf(x), |x| dist.sf(x), |x| dist.pdf(x)))
+    ChiSquared::new(nu).map_or(0.0, |dist| {
+        positive_quantile(p, |x| dist.cdf(x), |x| dist.sf(x), |x| dist.pdf(x))
+    })
 }
 
 /// F distribution function with `nu1` and `nu2` > 0 degrees of freedom; 0 where x ≤ 0 or a ν ≤ 0.
 #[must_use]
 pub fn f_cdf(x: f64, nu1: f64, nu2: f64) -> f64 {
-    checked_beta_reg(nu1 / 2.0, nu2 / 2.0, nu1 * x.max(0.0) / (nu1 * x.max(0.0) + nu2)).unwrap_or(0.0)
+    checked_beta_reg(
+        nu1 / 2.0,
+        nu2 / 2.0,
+        nu1 * x.max(0.0) / (nu1 * x.max(0.0) + nu2),
+    )
+    .unwrap_or(0.0)
 }
 
 /// Probability that F is exceeded, exact in the far tail; 1 where x ≤ 0 or a ν ≤ 0.
@@ -99,13 +108,29 @@ pub fn f_quantile(p: f64, nu1: f64, nu2: f64) -> f64 {
     if pdf(1.0).is_err() {
         return 0.0;
     }
-    positive_quantile(p, |x| f_cdf(x, nu1, nu2), |x| f_upper(x, nu1, nu2), |x| pdf(x).unwrap_or(0.0))
+    positive_quantile(
+        p,
+        |x| f_cdf(x, nu1, nu2),
+        |x| f_upper(x, nu1, nu2),
+        |x| pdf(x).unwrap_or(0.0),
+    )
 }
 
 /// Quantile of a distribution on 0…∞, solved in ln x, where its tails are short.
-fn positive_quantile(p: f64, cdf: impl Fn(f64) -> f64, upper: impl Fn(f64) -> f64, pdf: impl Fn(f64) -> f64) -> f64 {
+fn positive_quantile(
+    p: f64,
+    cdf: impl Fn(f64) -> f64,
+    upper: impl Fn(f64) -> f64,
+    pdf: impl Fn(f64) -> f64,
+) -> f64 {
     if p > 0.5 {
-        return (-lower_quantile(1.0 - p, |y| upper((-y).exp()), |y| pdf((-y).exp()) * (-y).exp(), 0.0)).exp();
+        return (-lower_quantile(
+            1.0 - p,
+            |y| upper((-y).exp()),
+            |y| pdf((-y).exp()) * (-y).exp(),
+            0.0,
+        ))
+        .exp();
     }
     lower_quantile(p, |y| cdf(y.exp()), |y| pdf(y.exp()) * y.exp(), 0.0).exp()
 }
@@ -136,7 +161,11 @@ fn lower_quantile(p: f64, cdf: impl Fn(f64) -> f64, pdf: impl Fn(f64) -> f64, st
             high = x;
         }
         let newton = x - at / pdf(x) * (at / p).ln();
-        let next = if newton > low && newton < high { newton } else { 0.5 * (low + high) };
+        let next = if newton > low && newton < high {
+            newton
+        } else {
+            0.5 * (low + high)
+        };
         if (next - x).abs() <= 2.0 * f64::EPSILON * next.abs() {
             return next;
         }
@@ -161,20 +190,37 @@ mod tests {
     }
 
     fn assert_close(got: f64, want: f64, what: &str) {
-        assert!((got / want - 1.0).abs() <= TABLE_TOL_REL, "{what}: got {got:e}, want {want:e}");
+        assert!(
+            (got / want - 1.0).abs() <= TABLE_TOL_REL,
+            "{what}: got {got:e}, want {want:e}"
+        );
     }
 
     #[test]
     fn student_t_matches_the_table_for_whole_and_fractional_degrees_of_freedom() -> Outcome {
-        let rows = table(include_str!("../fixtures/reference/stats/student_t_two_sided.csv"));
+        let rows = table(include_str!(
+            "../fixtures/reference/stats/student_t_two_sided.csv"
+        ));
         for row in &rows[1..] {
-            let nu = if row[0] == "inf" { f64::INFINITY } else { row[0].parse()? };
+            let nu = if row[0] == "inf" {
+                f64::INFINITY
+            } else {
+                row[0].parse()?
+            };
             for (head, cell) in rows[0].iter().zip(row).skip(1) {
                 let p: f64 = head.trim_start_matches("p_").parse()?;
                 let want: f64 = cell.parse()?;
-                assert_close(coverage_factor(p, nu), want, &format!("t, p = {p}, nu = {nu}"));
+                assert_close(
+                    coverage_factor(p, nu),
+                    want,
+                    &format!("t, p = {p}, nu = {nu}"),
+                );
                 if nu.is_finite() {
-                    assert_close(student_t_cdf(want, nu) - student_t_cdf(-want, nu), p, "and back");
+                    assert_close(
+                        student_t_cdf(want, nu) - student_t_cdf(-want, nu),
+                        p,
+                        "and back",
+                    );
                 }
             }
         }
@@ -183,11 +229,17 @@ mod tests {
 
     #[test]
     fn chi_squared_matches_the_table() -> Outcome {
-        let rows = table(include_str!("../fixtures/reference/stats/chi2_quantiles.csv"));
+        let rows = table(include_str!(
+            "../fixtures/reference/stats/chi2_quantiles.csv"
+        ));
         for row in &rows[1..] {
             for (head, cell) in rows[0].iter().zip(row).skip(1) {
                 let (p, nu): (f64, f64) = (head.trim_start_matches("p_").parse()?, row[0].parse()?);
-                assert_close(chi_squared_quantile(p, nu), cell.parse()?, &format!("chi2, p = {p}, nu = {nu}"));
+                assert_close(
+                    chi_squared_quantile(p, nu),
+                    cell.parse()?,
+                    &format!("chi2, p = {p}, nu = {nu}"),
+                );
                 assert_close(chi_squared_cdf(cell.parse()?, nu), p, "and back");
             }
         }
@@ -197,9 +249,18 @@ mod tests {
     #[test]
     fn f_matches_the_table() -> Outcome {
         for row in &table(include_str!("../fixtures/reference/stats/f_quantiles.csv"))[1..] {
-            let cells: Vec<f64> = row.iter().map(|cell| cell.parse()).collect::<Result<_, _>>()?;
-            let [p, nu1, nu2, want] = cells[..] else { return Err("four columns".into()) };
-            assert_close(f_quantile(p, nu1, nu2), want, &format!("F, p = {p}, nu = {nu1}, {nu2}"));
+            let cells: Vec<f64> = row
+                .iter()
+                .map(|cell| cell.parse())
+                .collect::<Result<_, _>>()?;
+            let [p, nu1, nu2, want] = cells[..] else {
+                return Err("four columns".into());
+            };
+            assert_close(
+                f_quantile(p, nu1, nu2),
+                want,
+                &format!("F, p = {p}, nu = {nu1}, {nu2}"),
+            );
             assert_close(f_cdf(want, nu1, nu2), p, "and back");
             assert_close(1.0 - f_upper(want, nu1, nu2), p, "from above");
         }
@@ -208,12 +269,18 @@ mod tests {
 
     #[test]
     fn normal_matches_the_table() -> Outcome {
-        for row in &table(include_str!("../fixtures/reference/stats/normal_quantiles.csv"))[1..] {
+        for row in &table(include_str!(
+            "../fixtures/reference/stats/normal_quantiles.csv"
+        ))[1..]
+        {
             let (p, want): (f64, f64) = (row[0].parse()?, row[1].parse()?);
             // As a double, 0.999999999 has lost seven digits of its tail; the table means the decimal number.
             let tail = ((1.0 - p) * 1e12).round() / 1e12;
             assert_close(normal_quantile(tail), -want, &format!("z, tail = {tail}"));
-            assert!((normal_quantile(p) / want - 1.0).abs() < 1e-9, "upper half, p = {p}");
+            assert!(
+                (normal_quantile(p) / want - 1.0).abs() < 1e-9,
+                "upper half, p = {p}"
+            );
             assert_close(normal_cdf(want), p, "and back");
             assert!((normal_two_sided(want) / (2.0 * (1.0 - p)) - 1.0).abs() < 1e-6);
         }

@@ -21,7 +21,12 @@ impl Quantity {
     #[must_use]
     pub fn symmetric(value: f64, u: f64, coverage_factor: f64, unit: &'static str) -> Self {
         let half = coverage_factor * u;
-        Self { value: Some(value), u: Some(u), unit, interval95: [Some(value - half), Some(value + half)] }
+        Self {
+            value: Some(value),
+            u: Some(u),
+            unit,
+            interval95: [Some(value - half), Some(value + half)],
+        }
     }
 }
 
@@ -60,7 +65,14 @@ pub struct BudgetRow {
 impl BudgetRow {
     /// A row whose contribution is |sensitivity| · u.
     #[must_use]
-    pub fn new(quantity: &'static str, source: impl Into<String>, evaluation: Evaluation, u: f64, unit: &'static str, sensitivity: f64) -> Self {
+    pub fn new(
+        quantity: &'static str,
+        source: impl Into<String>,
+        evaluation: Evaluation,
+        u: f64,
+        unit: &'static str,
+        sensitivity: f64,
+    ) -> Self {
         Self {
             quantity,
             source: source.into(),
@@ -92,7 +104,10 @@ impl BudgetRow {
 /// Root sum of squares of the contributions: the combined standard uncertainty of independent inputs (GUM 5.1.2).
 #[must_use]
 pub fn combined(rows: &[BudgetRow]) -> f64 {
-    rows.iter().map(|row| row.contribution * row.contribution).sum::<f64>().sqrt()
+    rows.iter()
+        .map(|row| row.contribution * row.contribution)
+        .sum::<f64>()
+        .sqrt()
 }
 
 /// Effective degrees of freedom of a combined uncertainty by Welch and Satterthwaite (GUM G.4.1); `None` for infinitely many.
@@ -100,7 +115,13 @@ pub fn combined(rows: &[BudgetRow]) -> f64 {
 /// ν_eff = u_c⁴ / Σ (contribution⁴ / ν), over the rows whose ν is finite.
 #[must_use]
 pub fn effective_degrees_of_freedom(rows: &[BudgetRow]) -> Option<f64> {
-    let sum: f64 = rows.iter().filter_map(|row| row.degrees_of_freedom.map(|nu| row.contribution.powi(4) / nu)).sum();
+    let sum: f64 = rows
+        .iter()
+        .filter_map(|row| {
+            row.degrees_of_freedom
+                .map(|nu| row.contribution.powi(4) / nu)
+        })
+        .sum();
     (sum > 0.0).then(|| combined(rows).powi(4) / sum)
 }
 
@@ -115,7 +136,10 @@ pub fn rounded(value: f64, u: f64) -> String {
     if !(u.is_finite() && u > 0.0) {
         return significant(value, 6);
     }
-    to_decimals(value, DIGITS_OF_U - 1 - exponent_after_rounding(u, DIGITS_OF_U))
+    to_decimals(
+        value,
+        DIGITS_OF_U - 1 - exponent_after_rounding(u, DIGITS_OF_U),
+    )
 }
 
 /// A value with `digits` ≥ 1 significant digits and no exponent: `significant(0.0123456, 3)` is `0.0123`.
@@ -132,21 +156,38 @@ pub fn significant(value: f64, digits: i32) -> String {
 /// * `unit`: a unit that takes prefixes (s, m, N); prefixes from pico to kilo.
 #[must_use]
 pub fn prefixed(value: f64, unit: &str, digits: i32) -> String {
-    const PREFIXES: [(i32, &str); 6] = [(-12, "p"), (-9, "n"), (-6, "µ"), (-3, "m"), (0, ""), (3, "k")];
+    const PREFIXES: [(i32, &str); 6] = [
+        (-12, "p"),
+        (-9, "n"),
+        (-6, "µ"),
+        (-3, "m"),
+        (0, ""),
+        (3, "k"),
+    ];
     if value == 0.0 || !value.is_finite() {
         return format!("{} {unit}", value.abs());
     }
     let exponent = (exponent_after_rounding(value, digits).div_euclid(3) * 3).clamp(-12, 3);
-    let prefix = PREFIXES.iter().find(|(power, _)| *power == exponent).map_or("", |(_, prefix)| prefix);
-    format!("{} {prefix}{unit}", significant(value * 10_f64.powi(-exponent), digits))
+    let prefix = PREFIXES
+        .iter()
+        .find(|(power, _)| *power == exponent)
+        .map_or("", |(_, prefix)| prefix);
+    format!(
+        "{} {prefix}{unit}",
+        significant(value * 10_f64.powi(-exponent), digits)
+    )
 }
 
 /// Decimal exponent of a value ≠ 0 rounded to `digits` significant digits: −1 for 0.0996 with two, which rounds to 0.10.
 fn exponent_after_rounding(value: f64, digits: i32) -> i32 {
     let exponent = value.abs().log10().floor();
     let unit = 10_f64.powf(exponent - f64::from(digits - 1));
-    let rounded_up = (value.abs() / unit).round() * unit >= 10_f64.powf(exponent + 1.0) * (1.0 - f64::EPSILON);
-    #[expect(clippy::cast_possible_truncation, reason = "the exponent of a double is within ±324")]
+    let rounded_up =
+        (value.abs() / unit).round() * unit >= 10_f64.powf(exponent + 1.0) * (1.0 - f64::EPSILON);
+    #[expect(
+        clippy::cast_possible_truncation,
+        reason = "the exponent of a double is within ±324"
+    )]
     let exponent = exponent as i32;
     exponent + i32::from(rounded_up)
 }
@@ -161,7 +202,11 @@ fn to_decimals(value: f64, decimals: i32) -> String {
         }
     };
     // Rounding −0.001 to two decimals must not leave a sign on zero.
-    if shown.bytes().all(|b| matches!(b, b'-' | b'0' | b'.')) { shown.replace('-', "") } else { shown }
+    if shown.bytes().all(|b| matches!(b, b'-' | b'0' | b'.')) {
+        shown.replace('-', "")
+    } else {
+        shown
+    }
 }
 
 #[cfg(test)]
@@ -185,7 +230,13 @@ mod tests {
 
     #[test]
     fn a_prefix_puts_one_to_three_digits_before_the_point() {
-        let cases = [(1.25e-5, "s", "12.5 µs"), (9.999e-4, "s", "1.00 ms"), (0.12, "m", "120 mm"), (31.0, "N", "31.0 N"), (0.0, "s", "0 s")];
+        let cases = [
+            (1.25e-5, "s", "12.5 µs"),
+            (9.999e-4, "s", "1.00 ms"),
+            (0.12, "m", "120 mm"),
+            (31.0, "N", "31.0 N"),
+            (0.0, "s", "0 s"),
+        ];
         for (value, unit, want) in cases {
             assert_eq!(prefixed(value, unit, 3), want);
         }
@@ -194,9 +245,16 @@ mod tests {
     #[test]
     fn effective_degrees_of_freedom_of_the_guide_come_out() {
         // GUM G.4.1: relative u 0.25 %, 0.57 %, 0.82 % of a product, with 9, 4 and 14 degrees of freedom: u_c = 1.03 %, ν_eff = 19.0.
-        let row = |u: f64, nu: f64| BudgetRow::new("product", "input", Evaluation::A, u, "%", 1.0).with_degrees_of_freedom(nu);
+        let row = |u: f64, nu: f64| {
+            BudgetRow::new("product", "input", Evaluation::A, u, "%", 1.0)
+                .with_degrees_of_freedom(nu)
+        };
         let rows = [row(0.25, 9.0), row(0.57, 4.0), row(0.82, 14.0)];
-        assert!((combined(&rows) - 1.03).abs() < 0.005, "u_c = {}", combined(&rows));
+        assert!(
+            (combined(&rows) - 1.03).abs() < 0.005,
+            "u_c = {}",
+            combined(&rows)
+        );
         assert!(effective_degrees_of_freedom(&rows).is_some_and(|nu| (nu - 19.0).abs() < 0.05));
     }
 }

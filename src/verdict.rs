@@ -1,6 +1,6 @@
 //! Answers, with the figures behind each.
 
-use crate::motion::{MotionFit, MotionQuantities};
+use crate::motion::{MotionFit, MotionQuantities, period_shift_s};
 use crate::uncertainty::{Evaluation, prefixed, rounded, significant};
 
 /// One of three answers.
@@ -65,7 +65,10 @@ const LONGEST: f64 = 100.0;
 /// * Returns the two, in this order.
 #[must_use]
 pub fn verdicts(fit: &MotionFit, quantities: &MotionQuantities) -> Vec<Verdict> {
-    vec![loss_present(fit, quantities), loss_shifts_period(fit, quantities)]
+    vec![
+        loss_present(fit, quantities),
+        loss_shifts_period(fit, quantities),
+    ]
 }
 
 fn loss_present(fit: &MotionFit, quantities: &MotionQuantities) -> Verdict {
@@ -76,14 +79,41 @@ fn loss_present(fit: &MotionFit, quantities: &MotionQuantities) -> Verdict {
     let (answer, sentence) = if low > 0.0 {
         let [from, to] = loss.interval95.map(|end| percent(end.unwrap_or(0.0)));
         let lost = percent(loss.value.unwrap_or(0.0));
-        (Answer::Yes, format!("Energy is lost: {lost} of it in a cycle (95 % interval {from} to {to}), and the decay rate of {} s⁻¹ stands clear of zero.", rounded(gamma, half(low, high) / 2.0)))
+        (
+            Answer::Yes,
+            format!(
+                "Energy is lost: {lost} of it in a cycle (95 % interval {from} to {to}), and the decay rate of {} s⁻¹ stands clear of zero.",
+                rounded(gamma, half(low, high) / 2.0)
+            ),
+        )
     } else if high < 0.0 {
-        (Answer::No, format!("The amplitude grows, by {} s⁻¹: energy is fed in rather than lost; check that nothing drives the motion.", rounded(-gamma, half(low, high) / 2.0)))
+        (
+            Answer::No,
+            format!(
+                "The amplitude grows, by {} s⁻¹: energy is fed in rather than lost; check that nothing drives the motion.",
+                rounded(-gamma, half(low, high) / 2.0)
+            ),
+        )
     } else if upper < RELEVANT_LOSS_PER_CYCLE {
-        (Answer::No, format!("No loss that matters: at most {} of the energy is lost in a cycle (95 %), below the {} taken as relevant.", percent(upper), percent(RELEVANT_LOSS_PER_CYCLE)))
+        (
+            Answer::No,
+            format!(
+                "No loss that matters: at most {} of the energy is lost in a cycle (95 %), below the {} taken as relevant.",
+                percent(upper),
+                percent(RELEVANT_LOSS_PER_CYCLE)
+            ),
+        )
     } else {
-        let advice = longer_film(fit, |shrunk| decay_rate_decides(gamma, half(low, high) * shrunk, fit.period_s()));
-        (Answer::Undecided, format!("The record allows no loss as well as one of {} of the energy in a cycle; {advice}.", percent(upper)))
+        let advice = longer_film(fit, |shrunk| {
+            decay_rate_decides(gamma, half(low, high) * shrunk, fit.period_s())
+        });
+        (
+            Answer::Undecided,
+            format!(
+                "The record allows no loss as well as one of {} of the energy in a cycle; {advice}.",
+                percent(upper)
+            ),
+        )
     };
     Verdict {
         question: "loss_present",
@@ -104,22 +134,43 @@ fn decay_rate_decides(gamma: f64, half_width: f64, period_s: f64) -> bool {
 fn loss_shifts_period(fit: &MotionFit, quantities: &MotionQuantities) -> Verdict {
     let period_s = fit.period_s();
     let shift_s = |zeta: f64| period_shift_s(period_s, zeta);
-    let [mut low, mut high] = quantities.damping_ratio.interval95.map(|end| shift_s(end.unwrap_or(0.0)));
+    let [mut low, mut high] = quantities
+        .damping_ratio
+        .interval95
+        .map(|end| shift_s(end.unwrap_or(0.0)));
     if low > high {
         // A growing motion: both ends of ζ are below 0.
         (low, high) = (high, low);
     }
     let zeta = quantities.damping_ratio.value.unwrap_or(0.0);
     let expanded_s = EXPANDED * quantities.period.u.unwrap_or(f64::INFINITY);
-    let (shift, against) = (prefixed(shift_s(zeta), "s", 2), prefixed(expanded_s, "s", 2));
+    let (shift, against) = (
+        prefixed(shift_s(zeta), "s", 2),
+        prefixed(expanded_s, "s", 2),
+    );
     let (from, to) = (prefixed(low, "s", 2), prefixed(high, "s", 2));
     let (answer, sentence) = if low > expanded_s {
-        (Answer::Yes, format!("Viscous loss makes the period {shift} longer than without loss (95 % interval {from} to {to}), more than the {against} (k = 2) to which it is known; dry friction of the same size would not move it."))
+        (
+            Answer::Yes,
+            format!(
+                "Viscous loss makes the period {shift} longer than without loss (95 % interval {from} to {to}), more than the {against} (k = 2) to which it is known; dry friction of the same size would not move it."
+            ),
+        )
     } else if high < expanded_s {
-        (Answer::No, format!("Viscous loss would make the period at most {to} longer, less than the {against} (k = 2) to which it is known, so that loss does not matter to it; dry friction would not move it at all."))
+        (
+            Answer::No,
+            format!(
+                "Viscous loss would make the period at most {to} longer, less than the {against} (k = 2) to which it is known, so that loss does not matter to it; dry friction would not move it at all."
+            ),
+        )
     } else {
         let advice = longer_film(fit, |shrunk| shift_decides(fit, quantities, shrunk));
-        (Answer::Undecided, format!("If the loss is viscous the period is {from} to {to} longer than without it, and known to {against} (k = 2), which lies between; {advice}. Dry friction would not move it."))
+        (
+            Answer::Undecided,
+            format!(
+                "If the loss is viscous the period is {from} to {to} longer than without it, and known to {against} (k = 2), which lies between; {advice}. Dry friction would not move it."
+            ),
+        )
     };
     Verdict {
         question: "loss_shifts_period",
@@ -131,16 +182,18 @@ fn loss_shifts_period(fit: &MotionFit, quantities: &MotionQuantities) -> Verdict
     }
 }
 
-/// T_d − T_0 = T_d (1 − √(1 − ζ²)), in the form that does not cancel.
-fn period_shift_s(period_s: f64, zeta: f64) -> f64 {
-    let x = zeta * zeta;
-    period_s * x / (1.0 + (1.0 - x).max(0.0).sqrt())
-}
-
 /// Would this record's estimates answer `loss_shifts_period` if the fit's uncertainties were `shrunk` times theirs? The clock's stays.
 fn shift_decides(fit: &MotionFit, quantities: &MotionQuantities, shrunk: f64) -> bool {
-    let part = |evaluation| quantities.budget.iter().filter(|row| row.quantity == "period" && row.evaluation == evaluation).map(|row| row.contribution.powi(2)).sum::<f64>();
-    let expanded_s = EXPANDED * (part(Evaluation::A) * shrunk * shrunk + part(Evaluation::B)).sqrt();
+    let part = |evaluation| {
+        quantities
+            .budget
+            .iter()
+            .filter(|row| row.quantity == "period" && row.evaluation == evaluation)
+            .map(|row| row.contribution.powi(2))
+            .sum::<f64>()
+    };
+    let expanded_s =
+        EXPANDED * (part(Evaluation::A) * shrunk * shrunk + part(Evaluation::B)).sqrt();
     let [low, high] = fit.decay_rate_interval95_per_s;
     let gamma = fit.decay_rate_per_s;
     let omega = fit.damped_angular_frequency_rad_per_s;
@@ -157,7 +210,9 @@ fn longer_film(fit: &MotionFit, decides: impl Fn(f64) -> bool) -> String {
         factor *= LONGER;
         if decides(factor.powf(-1.5)) {
             let seconds = significant(factor * fit.duration_s(), 2);
-            return format!("a film of about {seconds} s at the same frame rate would decide it, if the estimate holds and the motion lasts");
+            return format!(
+                "a film of about {seconds} s at the same frame rate would decide it, if the estimate holds and the motion lasts"
+            );
         }
     }
     "no longer film would decide it at this estimate, only a clock and a camera that are known better".to_owned()
@@ -172,6 +227,7 @@ fn percent(part: f64) -> String {
 }
 
 #[cfg(test)]
+#[allow(clippy::expect_used, reason = "a failed expectation is a failed test")]
 mod tests {
     use super::*;
     use crate::motion::{ExternalTerms, PositionRecord, fit, quantities};
@@ -183,10 +239,20 @@ mod tests {
         let error = |i: u32| if (i * i * 7 + i * 3) % 11 < 5 { noise } else { -noise } * 1e-5;
         let at = |i: u32| {
             let t_s = f64::from(i) / 60.0;
-            PositionRecord { t_s, u_t_s: 0.0, x_m: 0.1 * (-zeta * omega * t_s).exp() * (omega * t_s).cos() + error(i), u_x_m: 1e-5 }
+            PositionRecord {
+                t_s,
+                u_t_s: 0.0,
+                x_m: 0.1 * (-zeta * omega * t_s).exp() * (omega * t_s).cos() + error(i),
+                u_x_m: 1e-5,
+            }
         };
         let fit = fit(&(0..60 * seconds).map(at).collect::<Vec<_>>()).expect("a motion");
-        let external = ExternalTerms { u_clock_rel: clock_rel, clock_assumed: false, u_scale_rel: None, scale_assumed: false };
+        let external = ExternalTerms {
+            u_clock_rel: clock_rel,
+            clock_assumed: false,
+            u_scale_rel: None,
+            scale_assumed: false,
+        };
         verdicts(&fit, &quantities(&fit, &external))
     }
 
@@ -199,13 +265,26 @@ mod tests {
         // ζ = 0.005 moves 1.2 s by 15 µs; a clock known to 29 ppm (±50 ppm) gives U(T) = 69 µs.
         let verdicts = on(0.005, 30, 5.0, 2.9e-5);
         assert_eq!(answers(&verdicts), [Answer::Yes, Answer::No]);
-        assert!((verdicts[1].ratio / (1.2 * 0.5 * 0.005_f64.powi(2) / (2.0 * 2.9e-5 * 1.2)) - 1.0).abs() < 0.05, "{}", verdicts[1].ratio);
-        assert!(verdicts[1].sentence.contains("15 µs") && verdicts[1].sentence.contains("70 µs"), "{}", verdicts[1].sentence);
+        assert!(
+            (verdicts[1].ratio / (1.2 * 0.5 * 0.005_f64.powi(2) / (2.0 * 2.9e-5 * 1.2)) - 1.0)
+                .abs()
+                < 0.05,
+            "{}",
+            verdicts[1].ratio
+        );
+        assert!(
+            verdicts[1].sentence.contains("15 µs") && verdicts[1].sentence.contains("70 µs"),
+            "{}",
+            verdicts[1].sentence
+        );
     }
 
     #[test]
     fn with_a_good_clock_the_same_loss_shifts_the_period() {
-        assert_eq!(answers(&on(0.005, 30, 0.5, 1e-6)), [Answer::Yes, Answer::Yes]);
+        assert_eq!(
+            answers(&on(0.005, 30, 0.5, 1e-6)),
+            [Answer::Yes, Answer::Yes]
+        );
     }
 
     #[test]
@@ -217,7 +296,11 @@ mod tests {
     fn a_short_noisy_record_is_undecided_and_says_which_film_would_decide() {
         let verdicts = on(0.0002, 4, 60.0, 2.9e-5);
         assert_eq!(verdicts[0].answer, Answer::Undecided);
-        assert!(verdicts[0].sentence.contains("a film of about"), "{}", verdicts[0].sentence);
+        assert!(
+            verdicts[0].sentence.contains("a film of about"),
+            "{}",
+            verdicts[0].sentence
+        );
     }
 
     #[test]
@@ -225,8 +308,22 @@ mod tests {
         // With a perfect clock the ratio is shift/2u; a clock is then chosen that brings 2u to the shift of 1.2 s · ζ²/2.
         let shift_s = 1.2 * 0.5 * 0.02_f64.powi(2);
         let u_fit_s = 0.5 * shift_s / on(0.02, 4, 20.0, 0.0)[1].ratio;
-        let verdicts = on(0.02, 4, 20.0, (0.25 * shift_s.powi(2) - u_fit_s.powi(2)).sqrt() / 1.2);
-        assert_eq!(verdicts[1].answer, Answer::Undecided, "{}", verdicts[1].sentence);
-        assert!((verdicts[1].ratio - 1.0).abs() < 0.01, "{}", verdicts[1].ratio);
+        let verdicts = on(
+            0.02,
+            4,
+            20.0,
+            (0.25 * shift_s.powi(2) - u_fit_s.powi(2)).sqrt() / 1.2,
+        );
+        assert_eq!(
+            verdicts[1].answer,
+            Answer::Undecided,
+            "{}",
+            verdicts[1].sentence
+        );
+        assert!(
+            (verdicts[1].ratio - 1.0).abs() < 0.01,
+            "{}",
+            verdicts[1].ratio
+        );
     }
 }

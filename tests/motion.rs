@@ -1,5 +1,15 @@
 //! Outside checks of the motion room: results that other people certified, and records with a known motion.
 
+#![allow(
+    clippy::expect_used,
+    clippy::panic,
+    clippy::print_stdout,
+    clippy::cast_possible_truncation,
+    clippy::cast_sign_loss,
+    clippy::float_cmp,
+    reason = "a failed expectation is a failed test; tables are printed; counts are small"
+)]
+
 #[path = "motion/coverage.rs"]
 mod coverage;
 #[path = "motion/dual.rs"]

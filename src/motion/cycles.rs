@@ -60,17 +60,36 @@ pub struct Cycle {
 /// and is not part of them.
 #[must_use]
 pub fn cycles(records: &[PositionRecord], fit: &MotionFit) -> Vec<Cycle> {
-    let used: Vec<&PositionRecord> = records.iter().zip(&fit.uses).filter(|(_, u)| **u == PositionUse::Used).map(|(r, _)| r).collect();
-    let local = Local { used, fit, variance: normalised_variance(records, fit) * fit.residual.variance_enlargement };
+    let used: Vec<&PositionRecord> = records
+        .iter()
+        .zip(&fit.uses)
+        .filter(|(_, u)| **u == PositionUse::Used)
+        .map(|(r, _)| r)
+        .collect();
+    let local = Local {
+        used,
+        fit,
+        variance: normalised_variance(records, fit) * fit.residual.variance_enlargement,
+    };
     let passages = local.passages();
     let mut cycles: Vec<Cycle> = Vec::new();
     for (i, pair) in passages.windows(2).enumerate() {
-        let [Some(start), Some(end)] = pair else { continue };
+        let [Some(start), Some(end)] = pair else {
+            continue;
+        };
         let index = i + 1;
         let within = local.between(start.t_s, end.t_s);
         let (amplitude, period) = (local.amplitude(within), local.period(within));
-        let before = cycles.last().filter(|cycle| cycle.index + 1 == index).and_then(|cycle| cycle.amplitude_m.zip(cycle.u_amplitude_m));
-        let ratio = amplitude.zip(before).map(|((a, u), (a0, u0))| ((a / a0).powi(2), 2.0 * (a / a0).powi(2) * (u / a).hypot(u0 / a0)));
+        let before = cycles
+            .last()
+            .filter(|cycle| cycle.index + 1 == index)
+            .and_then(|cycle| cycle.amplitude_m.zip(cycle.u_amplitude_m));
+        let ratio = amplitude.zip(before).map(|((a, u), (a0, u0))| {
+            (
+                (a / a0).powi(2),
+                2.0 * (a / a0).powi(2) * (u / a).hypot(u0 / a0),
+            )
+        });
         cycles.push(Cycle {
             index,
             start_s: start.t_s,
@@ -104,8 +123,16 @@ struct Local<'a> {
 
 /// Σ (residual/σ)²/(n − 5) of the used readings.
 fn normalised_variance(records: &[PositionRecord], fit: &MotionFit) -> f64 {
-    let used = || records.iter().zip(&fit.residual_m).zip(&fit.uses).filter(|(_, u)| **u == PositionUse::Used);
-    let sum: f64 = used().map(|((record, residual), _)| (residual / sigma_m(record, fit)).powi(2)).sum();
+    let used = || {
+        records
+            .iter()
+            .zip(&fit.residual_m)
+            .zip(&fit.uses)
+            .filter(|(_, u)| **u == PositionUse::Used)
+    };
+    let sum: f64 = used()
+        .map(|((record, residual), _)| (residual / sigma_m(record, fit)).powi(2))
+        .sum();
     sum / (used().count() as f64 - 5.0).max(1.0)
 }
 
@@ -114,12 +141,21 @@ fn sigma_m(record: &PositionRecord, fit: &MotionFit) -> f64 {
     if record.u_x_m == 0.0 {
         return 1.0;
     }
-    record.u_x_m.hypot(sinusoid(fit).velocity_m_per_s(record.t_s - fit.t_ref_s) * record.u_t_s)
+    record
+        .u_x_m
+        .hypot(sinusoid(fit).velocity_m_per_s(record.t_s - fit.t_ref_s) * record.u_t_s)
 }
 
 fn sinusoid(fit: &MotionFit) -> Sinusoid {
-    let (amplitude_m, phase_rad, decay_rate_per_s) = (fit.amplitude_m, fit.phase_rad, fit.decay_rate_per_s);
-    Sinusoid { amplitude_m, phase_rad, decay_rate_per_s, omega_rad_per_s: fit.damped_angular_frequency_rad_per_s, centre_m: fit.centre_m }
+    let (amplitude_m, phase_rad, decay_rate_per_s) =
+        (fit.amplitude_m, fit.phase_rad, fit.decay_rate_per_s);
+    Sinusoid {
+        amplitude_m,
+        phase_rad,
+        decay_rate_per_s,
+        omega_rad_per_s: fit.damped_angular_frequency_rad_per_s,
+        centre_m: fit.centre_m,
+    }
 }
 
 impl Local<'_> {
@@ -129,9 +165,15 @@ impl Local<'_> {
         // cos θ rises through 0 at θ = −π/2 + 2πk.
         let first = ((self.fit.phase_rad + FRAC_PI_2) / TAU).ceil();
         (0..)
-            .map(|k| self.fit.t_ref_s + (TAU * (first + f64::from(k)) - FRAC_PI_2 - self.fit.phase_rad) / omega)
+            .map(|k| {
+                self.fit.t_ref_s
+                    + (TAU * (first + f64::from(k)) - FRAC_PI_2 - self.fit.phase_rad) / omega
+            })
             .take_while(|t_s| *t_s <= self.fit.t_end_s)
-            .map(|t_s| self.passage(t_s, PASSAGE_HALF_WIDTH).or_else(|| self.passage(t_s, PASSAGE_HALF_WIDTH_SPARSE)))
+            .map(|t_s| {
+                self.passage(t_s, PASSAGE_HALF_WIDTH)
+                    .or_else(|| self.passage(t_s, PASSAGE_HALF_WIDTH_SPARSE))
+            })
             .collect()
     }
 
@@ -167,12 +209,18 @@ impl Local<'_> {
         // ∂(−atan(D/B)/ω): the gradient with respect to (B, D).
         let gradient = Vector2::new(d, -b) / ((b * b + d * d) * omega);
         let u_s = (gradient.dot(&(inverse * gradient)) * self.variance).sqrt();
-        Some(Passage { t_s: expected_s - (d / b).atan() / omega, u_s })
+        Some(Passage {
+            t_s: expected_s - (d / b).atan() / omega,
+            u_s,
+        })
     }
 
     /// True where the readings of a cycle leave no part of it unseen.
     fn dense(&self, within: &[&PositionRecord]) -> bool {
-        let hole_s = within.windows(2).map(|pair| pair[1].t_s - pair[0].t_s).fold(0.0, f64::max);
+        let hole_s = within
+            .windows(2)
+            .map(|pair| pair[1].t_s - pair[0].t_s)
+            .fold(0.0, f64::max);
         within.len() >= MIN_READINGS_IN_CYCLE && hole_s <= MAX_HOLE * self.fit.period_s()
     }
 
@@ -188,15 +236,24 @@ impl Local<'_> {
         for (i, record) in within.iter().enumerate() {
             let s = record.t_s - middle_s;
             let (sin, cos) = (omega * s).sin_cos();
-            let (envelope, sigma) = ((-self.fit.decay_rate_per_s * s).exp(), sigma_m(record, self.fit));
-            rows.set_row(i, &(nalgebra::RowVector3::new(envelope * cos, envelope * sin, 1.0) / sigma));
+            let (envelope, sigma) = (
+                (-self.fit.decay_rate_per_s * s).exp(),
+                sigma_m(record, self.fit),
+            );
+            rows.set_row(
+                i,
+                &(nalgebra::RowVector3::new(envelope * cos, envelope * sin, 1.0) / sigma),
+            );
             right[i] = (record.x_m - self.fit.centre_m) / sigma;
         }
         let inverse = (rows.transpose() * &rows).try_inverse()?;
         let found = &inverse * rows.transpose() * right;
         let amplitude = found[0].hypot(found[1]);
         let gradient = DVector::from_vec(vec![found[0] / amplitude, found[1] / amplitude, 0.0]);
-        Some((amplitude, (gradient.dot(&(&inverse * &gradient)) * self.variance).sqrt()))
+        Some((
+            amplitude,
+            (gradient.dot(&(&inverse * &gradient)) * self.variance).sqrt(),
+        ))
     }
 
     /// Period of a sinusoid through these readings alone, only γ taken from the fit, and its u.
@@ -215,8 +272,16 @@ impl Local<'_> {
         };
         let weight_per_m: Vec<f64> = within.iter().map(|r| 1.0 / sigma_m(r, self.fit)).collect();
         let held_decay_rate_per_s = Some(self.fit.decay_rate_per_s);
-        let problem = SinusoidProblem { readings: &readings, weight_per_m: &weight_per_m, held_decay_rate_per_s };
-        let start = problem.free_parameters(sinusoid(self.fit).from_later(t_ref_s - self.fit.t_ref_s).parameters());
+        let problem = SinusoidProblem {
+            readings: &readings,
+            weight_per_m: &weight_per_m,
+            held_decay_rate_per_s,
+        };
+        let start = problem.free_parameters(
+            sinusoid(self.fit)
+                .counted_from(t_ref_s - self.fit.t_ref_s)
+                .parameters(),
+        );
         let solution = refine(&problem, &start).ok()?;
         let omega = solution.parameters[2];
         let u_omega = (solution.covariance_factor[(2, 2)] * self.variance).sqrt();
@@ -225,6 +290,7 @@ impl Local<'_> {
 }
 
 #[cfg(test)]
+#[allow(clippy::expect_used, reason = "a failed expectation is a failed test")]
 mod tests {
     use super::*;
     use crate::motion::fit;
@@ -232,8 +298,19 @@ mod tests {
     const OMEGA: f64 = TAU / 1.2;
 
     fn record(n: u32, lost: impl Fn(f64) -> bool) -> Vec<PositionRecord> {
-        let truth = Sinusoid { amplitude_m: 0.1, phase_rad: 0.3, decay_rate_per_s: 0.03, omega_rad_per_s: OMEGA, centre_m: 0.4 };
-        let at = |i| PositionRecord { t_s: f64::from(i) / 60.0, u_t_s: 0.0, x_m: truth.position_m(f64::from(i) / 60.0), u_x_m: 1e-4 };
+        let truth = Sinusoid {
+            amplitude_m: 0.1,
+            phase_rad: 0.3,
+            decay_rate_per_s: 0.03,
+            omega_rad_per_s: OMEGA,
+            centre_m: 0.4,
+        };
+        let at = |i| PositionRecord {
+            t_s: f64::from(i) / 60.0,
+            u_t_s: 0.0,
+            x_m: truth.position_m(f64::from(i) / 60.0),
+            u_x_m: 1e-4,
+        };
         (0..n).map(at).filter(|r| !lost(r.t_s)).collect()
     }
 
@@ -243,14 +320,26 @@ mod tests {
         let records = record(601, |_| false);
         let cycles = cycles(&records, &fit(&records).expect("a motion"));
         assert_eq!(cycles.len(), 7);
-        assert!((cycles[0].start_s - (1.5 * std::f64::consts::PI - 0.3) / OMEGA).abs() < 1e-9, "{}", cycles[0].start_s);
+        assert!(
+            (cycles[0].start_s - (1.5 * std::f64::consts::PI - 0.3) / OMEGA).abs() < 1e-9,
+            "{}",
+            cycles[0].start_s
+        );
         for cycle in &cycles {
             assert!((cycle.period_crossings_s - 1.2).abs() < 1e-9, "{cycle:?}");
-            assert!(cycle.period_local_s.is_some_and(|period| (period - 1.2).abs() < 1e-9), "{cycle:?}");
+            assert!(
+                cycle
+                    .period_local_s
+                    .is_some_and(|period| (period - 1.2).abs() < 1e-9),
+                "{cycle:?}"
+            );
         }
         // e^(−2·0.03·1.2); the middles of neighbouring cycles' readings lie one period apart to within a frame.
         let ratio = cycles[3].energy_ratio.expect("a cycle before");
-        assert!((ratio - (-0.072_f64).exp()).abs() < 2.0 * 0.03 / 60.0, "{ratio}");
+        assert!(
+            (ratio - (-0.072_f64).exp()).abs() < 2.0 * 0.03 / 60.0,
+            "{ratio}"
+        );
         assert_eq!(cycles[0].energy_ratio, None);
     }
 
@@ -270,7 +359,10 @@ mod tests {
         let records = record(601, |t_s| (t_s - top).abs() < 0.2);
         let cycles = cycles(&records, &fit(&records).expect("a motion"));
         assert_eq!(cycles.len(), 7);
-        assert_eq!((cycles[2].amplitude_m, cycles[2].period_local_s), (None, None));
+        assert_eq!(
+            (cycles[2].amplitude_m, cycles[2].period_local_s),
+            (None, None)
+        );
         assert!(cycles[1].amplitude_m.is_some() && cycles[3].energy_ratio.is_none());
     }
 }

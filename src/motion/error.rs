@@ -6,7 +6,9 @@ use super::least_squares::LeastSquaresError;
 #[derive(Clone, Debug, PartialEq, thiserror::Error)]
 pub enum MotionError {
     /// Fewer positions than the fit and its scatter need.
-    #[error("only {n_positions} positions to fit: at least {n_needed} are needed; film longer or find the marker in more frames")]
+    #[error(
+        "only {n_positions} positions to fit: at least {n_needed} are needed; film longer or find the marker in more frames"
+    )]
     TooFewPositions {
         /// Positions there are.
         n_positions: usize,
@@ -22,7 +24,9 @@ pub enum MotionError {
         row: usize,
     },
     /// A standard uncertainty below zero, or of zero where others are not.
-    #[error("{quantity} of position {row} is {value:e}, which cannot serve as a weight; give a figure above zero, or zero for every position")]
+    #[error(
+        "{quantity} of position {row} is {value:e}, which cannot serve as a weight; give a figure above zero, or zero for every position"
+    )]
     UnusableUncertainty {
         /// `uncertainty of the time` or `uncertainty of the position`.
         quantity: &'static str,
@@ -32,7 +36,9 @@ pub enum MotionError {
         value: f64,
     },
     /// Times that do not grow.
-    #[error("the time of position {row}, {t_s} s, is not later than the one before it, {previous_s} s; sort the rows by time and remove repeated ones")]
+    #[error(
+        "the time of position {row}, {t_s} s, is not later than the one before it, {previous_s} s; sort the rows by time and remove repeated ones"
+    )]
     TimeNotIncreasing {
         /// Position counted from 1.
         row: usize,
@@ -42,7 +48,9 @@ pub enum MotionError {
         previous_s: f64,
     },
     /// The amplitude does not stand out of the noise.
-    #[error("no motion found: the best amplitude is {amplitude_m:.2e} m where the readings scatter by {noise_m:.2e} m; check that the marker is on the moving part")]
+    #[error(
+        "no motion found: the best amplitude is {amplitude_m:.2e} m where the readings scatter by {noise_m:.2e} m; check that the marker is on the moving part"
+    )]
     NoMotion {
         /// Amplitude of the best sinusoid, m.
         amplitude_m: f64,
@@ -50,7 +58,9 @@ pub enum MotionError {
         noise_m: f64,
     },
     /// It moves, but not to and fro.
-    #[error("the marker moves, but does not oscillate: what a damped sinusoid leaves over is {residual_m:.2e} m against an amplitude of {amplitude_m:.2e} m; cut the record to the free oscillation")]
+    #[error(
+        "the marker moves, but does not oscillate: what a damped sinusoid leaves over is {residual_m:.2e} m against an amplitude of {amplitude_m:.2e} m; cut the record to the free oscillation"
+    )]
     NoOscillation {
         /// Amplitude of the best sinusoid, m.
         amplitude_m: f64,
@@ -58,7 +68,9 @@ pub enum MotionError {
         residual_m: f64,
     },
     /// Less than one and a half cycles.
-    #[error("the record holds {cycles:.2} cycles of a motion of period {period_s:.3} s, and at least {cycles_needed} are needed; film for {duration_needed_s:.1} s or more")]
+    #[error(
+        "the record holds {cycles:.2} cycles of a motion of period {period_s:.3} s, and at least {cycles_needed} are needed; film for {duration_needed_s:.1} s or more"
+    )]
     TooShort {
         /// Cycles there are.
         cycles: f64,
@@ -70,7 +82,9 @@ pub enum MotionError {
         duration_needed_s: f64,
     },
     /// Too few readings a cycle: the frequency could be another one.
-    #[error("the motion shows at {frequency_hz:.3} Hz, too near half the rate of {rate_hz:.3} readings a second to be told from a faster one; film at {rate_needed_hz:.0} Hz or more")]
+    #[error(
+        "the motion shows at {frequency_hz:.3} Hz, too near half the rate of {rate_hz:.3} readings a second to be told from a faster one; film at {rate_needed_hz:.0} Hz or more"
+    )]
     AboveNyquist {
         /// Frequency found, Hz.
         frequency_hz: f64,
@@ -80,7 +94,9 @@ pub enum MotionError {
         rate_needed_hz: f64,
     },
     /// More than a third of the positions do not belong to the motion.
-    #[error("{n_outliers} of {n_positions} positions lie off the motion, more than a third; check the marker's box and the record's limits")]
+    #[error(
+        "{n_outliers} of {n_positions} positions lie off the motion, more than a third; check the marker's box and the record's limits"
+    )]
     TooManyOutliers {
         /// Positions off the motion.
         n_outliers: usize,

@@ -5,7 +5,9 @@
 
 use super::guess::{Guess, guesses};
 use super::laws::{self, LawTrial, Sinusoid, SinusoidProblem, Weighted};
-use super::least_squares::{LeastSquaresError, Patience, Solution, minimise, refine, tangent_basis};
+use super::least_squares::{
+    LeastSquaresError, Patience, Solution, minimise, refine, tangent_basis,
+};
 use super::noise::{self, Enlargement, ResidualDiagnosis, Residue};
 use super::profile::Profile;
 use super::readings::{MIN_POSITIONS, Readings, median};
@@ -71,7 +73,9 @@ impl MotionFit {
     #[must_use]
     pub fn position_m(&self, t_s: f64) -> f64 {
         let tau = t_s - self.t_ref_s;
-        self.centre_m + self.envelope_m(t_s) * (self.damped_angular_frequency_rad_per_s * tau + self.phase_rad).cos()
+        self.centre_m
+            + self.envelope_m(t_s)
+                * (self.damped_angular_frequency_rad_per_s * tau + self.phase_rad).cos()
     }
     /// Fitted amplitude A e^(−γτ) at a time, in m.
     #[must_use]
@@ -108,13 +112,20 @@ impl MotionFit {
 pub fn fit(records: &[PositionRecord]) -> Result<MotionFit, MotionError> {
     let readings = Readings::new(records)?;
     let starts = guesses(&readings);
-    let majority = majority(&readings, &starts).map_err(|error| why_not_fitted(&readings, &starts, error))?;
+    let majority =
+        majority(&readings, &starts).map_err(|error| why_not_fitted(&readings, &starts, error))?;
     let used = readings.only(&majority.belongs);
     if used.len() < MIN_POSITIONS {
-        return Err(MotionError::TooFewPositions { n_positions: used.len(), n_needed: MIN_POSITIONS });
+        return Err(MotionError::TooFewPositions {
+            n_positions: used.len(),
+            n_needed: MIN_POSITIONS,
+        });
     }
-    let start = majority.sinusoid.from_later(used.t_ref_s - readings.t_ref_s);
-    let plain = Plain::new(&used, start).map_err(|error| why_not_fitted(&readings, &starts, error.into()))?;
+    let start = majority
+        .sinusoid
+        .counted_from(used.t_ref_s - readings.t_ref_s);
+    let plain = Plain::new(&used, start)
+        .map_err(|error| why_not_fitted(&readings, &starts, error.into()))?;
     let spread = plain.spread()?;
     plain.is_a_motion(&spread)?;
     plain.is_long_and_dense_enough()?;
@@ -138,7 +149,11 @@ struct Spread {
 
 impl<'a> Plain<'a> {
     fn new(used: &'a Readings, start: Sinusoid) -> Result<Self, LeastSquaresError> {
-        let rounds = if used.u_t_s.iter().any(|u| *u > 0.0) { WEIGHT_ROUNDS } else { 1 };
+        let rounds = if used.u_t_s.iter().any(|u| *u > 0.0) {
+            WEIGHT_ROUNDS
+        } else {
+            1
+        };
         let mut fitted = Self::round(used, start)?;
         for _ in 1..rounds {
             fitted = Self::round(used, fitted.sinusoid)?;
@@ -152,22 +167,53 @@ impl<'a> Plain<'a> {
 
     fn round(used: &'a Readings, start: Sinusoid) -> Result<Self, LeastSquaresError> {
         let weight_per_m: Vec<f64> = start.sigma_m(used).iter().map(|s| 1.0 / s).collect();
-        let problem = SinusoidProblem { readings: used, weight_per_m: &weight_per_m, held_decay_rate_per_s: None };
-        let solution = refine(&problem, &start.parameters()).or_else(|_| minimise(&problem, &start.parameters(), Some(&start.scale(used.span_s())), Patience::Short))?;
+        let problem = SinusoidProblem {
+            readings: used,
+            weight_per_m: &weight_per_m,
+            held_decay_rate_per_s: None,
+        };
+        let solution = refine(&problem, &start.parameters()).or_else(|_| {
+            minimise(
+                &problem,
+                &start.parameters(),
+                Some(&start.scale(used.span_s())),
+                Patience::Short,
+            )
+        })?;
         let sinusoid = Sinusoid::from_parameters(problem.all_parameters(&solution.parameters));
-        Ok(Self { used, weight_per_m, sinusoid, solution })
+        Ok(Self {
+            used,
+            weight_per_m,
+            sinusoid,
+            solution,
+        })
     }
 
     fn residual_m(&self) -> Vec<f64> {
-        self.used.tau_s.iter().zip(&self.used.x_m).map(|(tau, x)| x - self.sinusoid.position_m(*tau)).collect()
+        self.used
+            .tau_s
+            .iter()
+            .zip(&self.used.x_m)
+            .map(|(tau, x)| x - self.sinusoid.position_m(*tau))
+            .collect()
     }
 
     fn spread(&self) -> Result<Spread, LeastSquaresError> {
-        let problem = SinusoidProblem { readings: self.used, weight_per_m: &self.weight_per_m, held_decay_rate_per_s: None };
+        let problem = SinusoidProblem {
+            readings: self.used,
+            weight_per_m: &self.weight_per_m,
+            held_decay_rate_per_s: None,
+        };
         let parameters = self.sinusoid.parameters();
-        let basis = tangent_basis(&problem, &parameters).ok_or(LeastSquaresError::Singular { n_parameters: parameters.len() })?;
+        let basis = tangent_basis(&problem, &parameters).ok_or(LeastSquaresError::Singular {
+            n_parameters: parameters.len(),
+        })?;
         let residual_m = self.residual_m();
-        let normalised: Vec<f64> = residual_m.iter().zip(&self.weight_per_m).map(|(r, w)| r * w).collect();
+        let normalised: Vec<f64> = residual_m
+            .iter()
+            .zip(&self.weight_per_m)
+            .map(|(r, w)| r * w)
+            .collect();
         let residue = Residue {
             tau_s: &self.used.tau_s,
             normalised: &normalised,
@@ -175,7 +221,11 @@ impl<'a> Plain<'a> {
             variance: self.solution.residual_variance(),
             degrees_of_freedom: self.solution.degrees_of_freedom,
         };
-        let enlargement = noise::enlargement(&residue, self.sinusoid.omega_rad_per_s, self.sinusoid.decay_rate_per_s);
+        let enlargement = noise::enlargement(
+            &residue,
+            self.sinusoid.omega_rad_per_s,
+            self.sinusoid.decay_rate_per_s,
+        );
         let n = residual_m.len() as f64;
         let (runs_z, runs_p) = noise::runs_test(&normalised, median(normalised.clone()));
         let diagnosis = ResidualDiagnosis {
@@ -187,25 +237,48 @@ impl<'a> Plain<'a> {
             runs_z,
             runs_p,
         };
-        Ok(Spread { diagnosis, enlargement })
+        Ok(Spread {
+            diagnosis,
+            enlargement,
+        })
     }
 
     /// Refuses noise, and motion that is no oscillation.
     fn is_a_motion(&self, spread: &Spread) -> Result<(), MotionError> {
         let (amplitude_m, residual_m) = (self.sinusoid.amplitude_m, spread.diagnosis.rms_m);
         let alike = spread.diagnosis.autocorrelation_lag1 > APERIODIC_LAG1;
-        let significant = stands_out(self.solution.sum_of_squares / self.weighted_scatter(), self.used.len(), spread.diagnosis.n_effective);
+        let significant = stands_out(
+            self.solution.sum_of_squares / self.weighted_scatter(),
+            self.used.len(),
+            spread.diagnosis.n_effective,
+        );
         let aperiodic = alike && residual_m > APERIODIC_REL * amplitude_m;
-        if aperiodic || self.sinusoid.decay_rate_per_s > self.sinusoid.omega_rad_per_s || (alike && !significant) {
-            return Err(MotionError::NoOscillation { amplitude_m, residual_m });
+        if aperiodic
+            || self.sinusoid.decay_rate_per_s > self.sinusoid.omega_rad_per_s
+            || (alike && !significant)
+        {
+            return Err(MotionError::NoOscillation {
+                amplitude_m,
+                residual_m,
+            });
         }
-        significant.then_some(()).ok_or(MotionError::NoMotion { amplitude_m, noise_m: residual_m })
+        significant.then_some(()).ok_or(MotionError::NoMotion {
+            amplitude_m,
+            noise_m: residual_m,
+        })
     }
 
     /// Σ w²(x − x̄)² about the weighted mean: what a motionless marker would leave.
     fn weighted_scatter(&self) -> f64 {
-        let pairs = || self.used.x_m.iter().zip(&self.weight_per_m).map(|(x, w)| (x, w * w));
-        let mean = pairs().map(|(x, w2)| x * w2).sum::<f64>() / pairs().map(|(_, w2)| w2).sum::<f64>();
+        let pairs = || {
+            self.used
+                .x_m
+                .iter()
+                .zip(&self.weight_per_m)
+                .map(|(x, w)| (x, w * w))
+        };
+        let mean =
+            pairs().map(|(x, w2)| x * w2).sum::<f64>() / pairs().map(|(_, w2)| w2).sum::<f64>();
         pairs().map(|(x, w2)| w2 * (x - mean).powi(2)).sum()
     }
 
@@ -229,15 +302,24 @@ impl<'a> Plain<'a> {
     fn covariance(&self, enlargement: &Enlargement) -> [[f64; 5]; 5] {
         let near = enlargement.near_omega.sqrt();
         let growth = [near, near, near, near, enlargement.near_zero.sqrt()];
-        let (s2, factor) = (self.solution.residual_variance(), &self.solution.covariance_factor);
-        std::array::from_fn(|i| std::array::from_fn(|j| s2 * factor[(i, j)] * growth[i] * growth[j]))
+        let (s2, factor) = (
+            self.solution.residual_variance(),
+            &self.solution.covariance_factor,
+        );
+        std::array::from_fn(|i| {
+            std::array::from_fn(|j| s2 * factor[(i, j)] * growth[i] * growth[j])
+        })
     }
 }
 
 fn dense_enough(interval_s: f64, frequency_hz: f64) -> Result<(), MotionError> {
     let rate_hz = 1.0 / interval_s;
     if frequency_hz * MIN_READINGS_PER_CYCLE > rate_hz {
-        return Err(MotionError::AboveNyquist { frequency_hz, rate_hz, rate_needed_hz: (READINGS_PER_CYCLE_WANTED * frequency_hz).ceil() });
+        return Err(MotionError::AboveNyquist {
+            frequency_hz,
+            rate_hz,
+            rate_needed_hz: (READINGS_PER_CYCLE_WANTED * frequency_hz).ceil(),
+        });
     }
     Ok(())
 }
@@ -246,7 +328,12 @@ fn long_enough(span_s: f64, frequency_hz: f64) -> Result<(), MotionError> {
     let cycles = span_s * frequency_hz;
     if cycles < MIN_CYCLES {
         let period_s = 1.0 / frequency_hz;
-        return Err(MotionError::TooShort { cycles, cycles_needed: MIN_CYCLES, period_s, duration_needed_s: MIN_CYCLES * period_s });
+        return Err(MotionError::TooShort {
+            cycles,
+            cycles_needed: MIN_CYCLES,
+            period_s,
+            duration_needed_s: MIN_CYCLES * period_s,
+        });
     }
     Ok(())
 }
@@ -264,20 +351,40 @@ fn stands_out(left: f64, n_readings: usize, n_effective: f64) -> bool {
 fn why_not_fitted(readings: &Readings, starts: &[Guess], error: MotionError) -> MotionError {
     let n = readings.len() as f64;
     let Some(best) = starts.first() else {
-        return MotionError::NoMotion { amplitude_m: 0.0, noise_m: 0.0 };
+        return MotionError::NoMotion {
+            amplitude_m: 0.0,
+            noise_m: 0.0,
+        };
     };
     if !matches!(error, MotionError::NotFitted(_)) {
         return error;
     }
     if !stands_out(1.0 - best.explained, readings.len(), n) {
-        let left: f64 = readings.tau_s.iter().zip(&readings.x_m).map(|(tau, x)| (x - best.sinusoid.position_m(*tau)).powi(2)).sum();
-        return MotionError::NoMotion { amplitude_m: best.sinusoid.amplitude_m, noise_m: (left / n).sqrt() };
+        let left: f64 = readings
+            .tau_s
+            .iter()
+            .zip(&readings.x_m)
+            .map(|(tau, x)| (x - best.sinusoid.position_m(*tau)).powi(2))
+            .sum();
+        return MotionError::NoMotion {
+            amplitude_m: best.sinusoid.amplitude_m,
+            noise_m: (left / n).sqrt(),
+        };
     }
     let frequency_hz = best.sinusoid.omega_rad_per_s / TAU;
-    long_enough(readings.span_s(), frequency_hz).and_then(|()| dense_enough(readings.interval_s(), frequency_hz)).err().unwrap_or(error)
+    long_enough(readings.span_s(), frequency_hz)
+        .and_then(|()| dense_enough(readings.interval_s(), frequency_hz))
+        .err()
+        .unwrap_or(error)
 }
 
-fn assemble(records: &[PositionRecord], belongs: &[bool], plain: &Plain, spread: &Spread, laws: Vec<LawTrial>) -> MotionFit {
+fn assemble(
+    records: &[PositionRecord],
+    belongs: &[bool],
+    plain: &Plain,
+    spread: &Spread,
+    laws: Vec<LawTrial>,
+) -> MotionFit {
     let best = plain.sinusoid;
     let covariance = plain.covariance(&spread.enlargement);
     let profile = Profile {
@@ -290,7 +397,10 @@ fn assemble(records: &[PositionRecord], belongs: &[bool], plain: &Plain, spread:
         u_decay_rate_per_s: covariance[2][2].sqrt(),
     };
     let used = plain.used;
-    let fit_m: Vec<f64> = records.iter().map(|r| used.x_ref_m + best.position_m(r.t_s - used.t_ref_s)).collect();
+    let fit_m: Vec<f64> = records
+        .iter()
+        .map(|r| used.x_ref_m + best.position_m(r.t_s - used.t_ref_s))
+        .collect();
     MotionFit {
         t_ref_s: used.t_ref_s,
         t_end_s: used.t_ref_s + used.span_s(),
@@ -300,9 +410,19 @@ fn assemble(records: &[PositionRecord], belongs: &[bool], plain: &Plain, spread:
         damped_angular_frequency_rad_per_s: best.omega_rad_per_s,
         centre_m: best.centre_m + used.x_ref_m,
         covariance,
-        decay_rate_interval95_per_s: profile.interval(coverage_factor(0.95, spread.enlargement.degrees_of_freedom)),
+        decay_rate_interval95_per_s: profile
+            .interval(coverage_factor(0.95, spread.enlargement.degrees_of_freedom)),
         degrees_of_freedom: spread.enlargement.degrees_of_freedom,
-        uses: belongs.iter().map(|b| if *b { PositionUse::Used } else { PositionUse::Outlier }).collect(),
+        uses: belongs
+            .iter()
+            .map(|b| {
+                if *b {
+                    PositionUse::Used
+                } else {
+                    PositionUse::Outlier
+                }
+            })
+            .collect(),
         residual_m: records.iter().zip(&fit_m).map(|(r, x)| r.x_m - x).collect(),
         fit_m,
         residual: spread.diagnosis.clone(),

@@ -50,22 +50,36 @@ pub(super) fn guesses(readings: &Readings) -> Vec<Guess> {
     let mut spread: Vec<f64> = readings.x_m.iter().map(|x| x.abs()).collect();
     spread.sort_by(f64::total_cmp);
     let limit = CLIP * spread[spread.len() * 4 / 5];
-    let clipped: Vec<f64> = readings.x_m.iter().map(|x| x.clamp(-limit, limit)).collect();
+    let clipped: Vec<f64> = readings
+        .x_m
+        .iter()
+        .map(|x| x.clamp(-limit, limit))
+        .collect();
     let mut scans = Vec::from_iter(scan(readings, &readings.x_m));
     if limit > 0.0 && clipped != readings.x_m {
         scans.extend(scan(readings, &clipped));
     }
-    scans.into_iter().map(|(gamma, omega, explained)| Guess { sinusoid: linear_part(readings, gamma, omega), explained }).collect()
+    scans
+        .into_iter()
+        .map(|(gamma, omega, explained)| Guess {
+            sinusoid: linear_part(readings, gamma, omega),
+            explained,
+        })
+        .collect()
 }
 
 /// Start at a held γ and ω.
 ///
 /// A, φ and c by linear least squares, reweighted towards the sum of absolute values, so that wild readings do not own it.
 pub(super) fn linear_part(readings: &Readings, gamma: f64, omega: f64) -> Sinusoid {
-    let rows: Vec<Vector3<f64>> = readings.tau_s.iter().map(|tau| {
-        let (envelope, (sin, cos)) = ((-gamma * tau).exp(), (omega * tau).sin_cos());
-        Vector3::new(envelope * cos, -envelope * sin, 1.0)
-    }).collect();
+    let rows: Vec<Vector3<f64>> = readings
+        .tau_s
+        .iter()
+        .map(|tau| {
+            let (envelope, (sin, cos)) = ((-gamma * tau).exp(), (omega * tau).sin_cos());
+            Vector3::new(envelope * cos, -envelope * sin, 1.0)
+        })
+        .collect();
     let mut weights = vec![1.0; rows.len()];
     let mut best = Vector3::zeros();
     for _ in 0..LINEAR_STEPS {
@@ -74,9 +88,15 @@ pub(super) fn linear_part(readings: &Readings, gamma: f64, omega: f64) -> Sinuso
             normal += row * row.transpose() * *w;
             right += row * (*x * *w);
         }
-        let Some(next) = normal.lu().solve(&right) else { break };
+        let Some(next) = normal.lu().solve(&right) else {
+            break;
+        };
         best = next;
-        let residuals: Vec<f64> = rows.iter().zip(&readings.x_m).map(|(row, x)| (x - row.dot(&best)).abs()).collect();
+        let residuals: Vec<f64> = rows
+            .iter()
+            .zip(&readings.x_m)
+            .map(|(row, x)| (x - row.dot(&best)).abs())
+            .collect();
         let floor = median(residuals.clone());
         if floor <= 0.0 {
             break;
@@ -85,7 +105,13 @@ pub(super) fn linear_part(readings: &Readings, gamma: f64, omega: f64) -> Sinuso
             *w = floor / r.max(floor);
         }
     }
-    Sinusoid::from_parameters([best[0].hypot(best[1]), best[1].atan2(best[0]), gamma, omega, best[2]])
+    Sinusoid::from_parameters([
+        best[0].hypot(best[1]),
+        best[1].atan2(best[0]),
+        gamma,
+        omega,
+        best[2],
+    ])
 }
 
 /// The record as weights and sums in even cells.
@@ -98,13 +124,25 @@ struct Cells {
 }
 
 impl Cells {
-    #[expect(clippy::cast_possible_truncation, clippy::cast_sign_loss, reason = "a quotient of checked times, ≥ 0 and at most MAX_CELLS")]
+    #[expect(
+        clippy::cast_possible_truncation,
+        clippy::cast_sign_loss,
+        reason = "a quotient of checked times, ≥ 0 and at most MAX_CELLS"
+    )]
     fn new(readings: &Readings, x_m: &[f64]) -> Self {
         let interval = readings.interval_s();
-        let even = readings.tau_s.iter().all(|tau| (tau / interval - (tau / interval).round()).abs() < EVEN_CLOCK_TOL_REL);
-        let width_s = (if even { interval } else { 0.5 * interval }).max(readings.span_s() / (MAX_CELLS - 1) as f64);
+        let even = readings
+            .tau_s
+            .iter()
+            .all(|tau| (tau / interval - (tau / interval).round()).abs() < EVEN_CLOCK_TOL_REL);
+        let width_s = (if even { interval } else { 0.5 * interval })
+            .max(readings.span_s() / (MAX_CELLS - 1) as f64);
         let n_cells = (readings.span_s() / width_s).round() as usize + 1;
-        let grid = if n_cells <= FINE_UP_TO_CELLS { GRID_FINE } else { GRID_COARSE };
+        let grid = if n_cells <= FINE_UP_TO_CELLS {
+            GRID_FINE
+        } else {
+            GRID_COARSE
+        };
         let mean = x_m.iter().sum::<f64>() / x_m.len() as f64;
         let (mut count, mut sum) = (vec![0.0; n_cells], vec![0.0; n_cells]);
         for (tau, x) in readings.tau_s.iter().zip(x_m) {
@@ -112,7 +150,12 @@ impl Cells {
             count[cell] += 1.0;
             sum[cell] += x - mean;
         }
-        Self { width_s, n_transform: (grid * n_cells).next_power_of_two(), count, sum }
+        Self {
+            width_s,
+            n_transform: (grid * n_cells).next_power_of_two(),
+            count,
+            sum,
+        }
     }
 
     fn omega(&self, m: usize) -> f64 {
@@ -130,14 +173,21 @@ fn scan(readings: &Readings, x_m: &[f64]) -> Option<(f64, f64, f64)> {
     let highest = std::f64::consts::PI / readings.interval_s();
     let grid: Vec<(usize, f64)> = (1..cells.n_transform / 2)
         .map(|m| (m, cells.omega(m)))
-        .filter(|(_, omega)| *omega * span >= std::f64::consts::TAU * MIN_CYCLES && *omega <= highest)
+        .filter(|(_, omega)| {
+            *omega * span >= std::f64::consts::TAU * MIN_CYCLES && *omega <= highest
+        })
         .collect();
     let mut best: Option<(f64, f64, f64)> = None;
-    let ladder = std::iter::once(0.0).chain((0..).map(|k| f64::from(k).exp2() / span)).take_while(|gamma| *gamma <= MAX_DECAY_REL * highest);
+    let ladder = std::iter::once(0.0)
+        .chain((0..).map(|k| f64::from(k).exp2() / span))
+        .take_while(|gamma| *gamma <= MAX_DECAY_REL * highest);
     let mut sums = Sums::new(&cells);
     for gamma in ladder {
         sums.take(&cells, gamma, transform.as_ref());
-        for &(m, omega) in grid.iter().filter(|(_, omega)| gamma <= MAX_DECAY_REL * *omega) {
+        for &(m, omega) in grid
+            .iter()
+            .filter(|(_, omega)| gamma <= MAX_DECAY_REL * *omega)
+        {
             let explained = sums.removed_at(m) / total;
             if explained.is_finite() && best.is_none_or(|(_, _, most)| explained > most) {
                 best = Some((gamma, omega, explained));
@@ -165,13 +215,21 @@ impl Sums {
     /// Room for the sums; one set serves the whole ladder, because clearing fresh pages would cost as much as the transforms.
     fn new(cells: &Cells) -> Self {
         let empty = || vec![Complex64::default(); cells.n_transform];
-        Self { n: cells.count.iter().sum(), envelope2: 0.0, x: cells.sum.iter().sum(), first: empty(), second: empty(), scratch: empty() }
+        Self {
+            n: cells.count.iter().sum(),
+            envelope2: 0.0,
+            x: cells.sum.iter().sum(),
+            first: empty(),
+            second: empty(),
+            scratch: empty(),
+        }
     }
 
     fn take(&mut self, cells: &Cells, gamma: f64, transform: &dyn rustfft::Fft<f64>) {
         self.first.fill(Complex64::default());
         self.second.fill(Complex64::default());
-        self.scratch.resize(transform.get_inplace_scratch_len(), Complex64::default());
+        self.scratch
+            .resize(transform.get_inplace_scratch_len(), Complex64::default());
         self.envelope2 = 0.0;
         for (i, (count, sum)) in cells.count.iter().zip(&cells.sum).enumerate() {
             let envelope = (-gamma * i as f64 * cells.width_s).exp();
@@ -188,7 +246,10 @@ impl Sums {
         let len = self.first.len();
         let (here, mirror) = (self.first[m], self.first[len - m].conj());
         // The two real sequences' transforms, told apart by their symmetry; the transform's sine has a minus sign.
-        let (weight, x) = ((here + mirror) * 0.5, (here - mirror) * Complex64::new(0.0, -0.5));
+        let (weight, x) = (
+            (here + mirror) * 0.5,
+            (here - mirror) * Complex64::new(0.0, -0.5),
+        );
         let double = self.second[(2 * m) % len];
         let (c1, s1, cy, sy) = (weight.re, -weight.im, x.re, -x.im);
         let cc = 0.5 * (self.envelope2 + double.re) - c1 * c1 / self.n;
@@ -204,35 +265,72 @@ impl Sums {
 }
 
 #[cfg(test)]
+#[allow(clippy::expect_used, reason = "a failed expectation is a failed test")]
 mod tests {
     use super::*;
     use crate::motion::PositionRecord;
 
-    fn readings(n: u32, rate_hz: f64, truth: Sinusoid, wild: impl Fn(u32) -> f64, kept: impl Fn(u32) -> bool) -> Readings {
-        let records: Vec<PositionRecord> = (0..n).filter(|i| kept(*i)).map(|i| {
-            let t_s = f64::from(i) / rate_hz;
-            PositionRecord { t_s, u_t_s: 0.0, x_m: truth.position_m(t_s) + wild(i), u_x_m: 1e-4 }
-        }).collect();
+    fn readings(
+        n: u32,
+        rate_hz: f64,
+        truth: Sinusoid,
+        wild: impl Fn(u32) -> f64,
+        kept: impl Fn(u32) -> bool,
+    ) -> Readings {
+        let records: Vec<PositionRecord> = (0..n)
+            .filter(|i| kept(*i))
+            .map(|i| {
+                let t_s = f64::from(i) / rate_hz;
+                PositionRecord {
+                    t_s,
+                    u_t_s: 0.0,
+                    x_m: truth.position_m(t_s) + wild(i),
+                    u_x_m: 1e-4,
+                }
+            })
+            .collect();
         Readings::new(&records).expect("a sound record")
     }
 
     /// The fit finds its way from half a cycle off over the record; the grid must do better.
     fn assert_found(readings: &Readings, truth: Sinusoid, what: &str) {
-        let off = guesses(readings).iter().map(|g| (g.sinusoid.omega_rad_per_s - truth.omega_rad_per_s).abs()).fold(f64::INFINITY, f64::min);
+        let off = guesses(readings)
+            .iter()
+            .map(|g| (g.sinusoid.omega_rad_per_s - truth.omega_rad_per_s).abs())
+            .fold(f64::INFINITY, f64::min);
         let tolerance = (1.0 / readings.span_s()).max(truth.decay_rate_per_s);
-        assert!(off < tolerance, "{what}: ω off by {off} rad/s, tolerance {tolerance}");
+        assert!(
+            off < tolerance,
+            "{what}: ω off by {off} rad/s, tolerance {tolerance}"
+        );
     }
 
     fn truth(cycles_per_s: f64, zeta: f64) -> Sinusoid {
         let omega = std::f64::consts::TAU * cycles_per_s;
-        Sinusoid { amplitude_m: 0.1, phase_rad: 0.4, decay_rate_per_s: zeta * omega, omega_rad_per_s: omega, centre_m: 0.03 }
+        Sinusoid {
+            amplitude_m: 0.1,
+            phase_rad: 0.4,
+            decay_rate_per_s: zeta * omega,
+            omega_rad_per_s: omega,
+            centre_m: 0.03,
+        }
     }
 
     #[test]
     fn from_one_and_a_half_cycles_to_a_thousand_the_frequency_is_found() {
-        for (n, frequency) in [(60, 1.5), (60, 2.2), (600, 0.83), (4000, 17.0), (20_000, 3.1)] {
+        for (n, frequency) in [
+            (60, 1.5),
+            (60, 2.2),
+            (600, 0.83),
+            (4000, 17.0),
+            (20_000, 3.1),
+        ] {
             let motion = truth(frequency, 3e-4);
-            assert_found(&readings(n, 60.0, motion, |_| 0.0, |_| true), motion, &format!("{n} readings, {frequency} Hz"));
+            assert_found(
+                &readings(n, 60.0, motion, |_| 0.0, |_| true),
+                motion,
+                &format!("{n} readings, {frequency} Hz"),
+            );
         }
     }
 
@@ -240,14 +338,28 @@ mod tests {
     fn strong_damping_is_found_in_a_long_record() {
         for zeta in [0.02, 0.1, 0.2] {
             let motion = truth(1.2, zeta);
-            assert_found(&readings(1500, 60.0, motion, |_| 0.0, |_| true), motion, &format!("ζ = {zeta}"));
+            assert_found(
+                &readings(1500, 60.0, motion, |_| 0.0, |_| true),
+                motion,
+                &format!("ζ = {zeta}"),
+            );
         }
     }
 
     #[test]
     fn gaps_and_a_tenth_of_wild_values_do_not_hide_it() {
         let motion = truth(0.83, 0.005);
-        let wild = |i: u32| if i % 10 == 3 { 40.0 * f64::from(i * 7919 % 13) - 200.0 } else { 0.0 };
-        assert_found(&readings(900, 60.0, motion, wild, |i| !(200..420).contains(&i)), motion, "gap and wild values");
+        let wild = |i: u32| {
+            if i % 10 == 3 {
+                40.0 * f64::from(i * 7919 % 13) - 200.0
+            } else {
+                0.0
+            }
+        };
+        assert_found(
+            &readings(900, 60.0, motion, wild, |i| !(200..420).contains(&i)),
+            motion,
+            "gap and wild values",
+        );
     }
 }

@@ -94,7 +94,9 @@ impl Solution {
     #[must_use]
     pub fn standard_uncertainties(&self) -> Vec<f64> {
         let s2 = self.residual_variance();
-        (0..self.parameters.len()).map(|j| (s2 * self.covariance_factor[(j, j)]).sqrt()).collect()
+        (0..self.parameters.len())
+            .map(|j| (s2 * self.covariance_factor[(j, j)]).sqrt())
+            .collect()
     }
 }
 
@@ -102,7 +104,9 @@ impl Solution {
 #[derive(Clone, Copy, Debug, PartialEq, thiserror::Error)]
 pub enum LeastSquaresError {
     /// Not more residuals than parameters: nothing is left to estimate the scatter from.
-    #[error("{n_residuals} readings cannot determine {n_parameters} parameters and their scatter; give more readings")]
+    #[error(
+        "{n_residuals} readings cannot determine {n_parameters} parameters and their scatter; give more readings"
+    )]
     TooFewResiduals {
         /// Number of residuals.
         n_residuals: usize,
@@ -113,13 +117,17 @@ pub enum LeastSquaresError {
     #[error("the model is not finite at the start values of the fit; start closer to the solution")]
     NotFinite,
     /// The readings do not tell two parameters apart.
-    #[error("the readings do not determine all {n_parameters} parameters; give readings that cover more of the motion")]
+    #[error(
+        "the readings do not determine all {n_parameters} parameters; give readings that cover more of the motion"
+    )]
     Singular {
         /// Number of parameters.
         n_parameters: usize,
     },
     /// It stopped where the gradient test does not pass.
-    #[error("the fit did not settle: it stopped {relative_offset:.1e} of its own uncertainty away from a minimum; start closer to the solution")]
+    #[error(
+        "the fit did not settle: it stopped {relative_offset:.1e} of its own uncertainty away from a minimum; start closer to the solution"
+    )]
     NotConverged {
         /// Distance from the minimum in units of the confidence region's radius.
         relative_offset: f64,
@@ -137,10 +145,17 @@ pub enum LeastSquaresError {
 /// # Source
 /// [Levenberg, Marquardt, Moré](crate::sources::LevenbergMarquardt); the test is the relative offset of
 /// [Bates and Watts](crate::sources::BatesWatts81). Checked against [NIST's certified results](crate::sources::NistStrd) (`tests/motion.rs`).
-pub fn minimise<P: Residuals>(problem: &P, start: &[f64], scale: Option<&[f64]>, patience: Patience) -> Result<Solution, LeastSquaresError> {
+pub fn minimise<P: Residuals>(
+    problem: &P,
+    start: &[f64],
+    scale: Option<&[f64]>,
+    patience: Patience,
+) -> Result<Solution, LeastSquaresError> {
     check(problem, start)?;
     let mut parameters = start.to_vec();
-    let mut last = Err(LeastSquaresError::NotConverged { relative_offset: f64::INFINITY });
+    let mut last = Err(LeastSquaresError::NotConverged {
+        relative_offset: f64::INFINITY,
+    });
     for run in 1..=MAX_RUNS {
         let unit = scale.map_or_else(|| own_scale(&parameters), <[f64]>::to_vec);
         let stopped = trust_region(problem, &parameters, &unit, patience);
@@ -180,7 +195,10 @@ pub fn advance<P: Residuals>(problem: &P, start: &[f64], scale: &[f64]) -> Vec<f
 fn check<P: Residuals>(problem: &P, start: &[f64]) -> Result<(), LeastSquaresError> {
     let (n_residuals, n_parameters) = (problem.n_residuals(), start.len());
     if n_residuals <= n_parameters {
-        return Err(LeastSquaresError::TooFewResiduals { n_residuals, n_parameters });
+        return Err(LeastSquaresError::TooFewResiduals {
+            n_residuals,
+            n_parameters,
+        });
     }
     let finite = sum_of_squares(problem, start).1.is_finite();
     finite.then_some(()).ok_or(LeastSquaresError::NotFinite)
@@ -188,7 +206,10 @@ fn check<P: Residuals>(problem: &P, start: &[f64]) -> Result<(), LeastSquaresErr
 
 /// |value|, or 1 where it is 0.
 fn own_scale(parameters: &[f64]) -> Vec<f64> {
-    parameters.iter().map(|p| if p.abs() > 0.0 { p.abs() } else { 1.0 }).collect()
+    parameters
+        .iter()
+        .map(|p| if p.abs() > 0.0 { p.abs() } else { 1.0 })
+        .collect()
 }
 
 fn sum_of_squares<P: Residuals>(problem: &P, parameters: &[f64]) -> (Vec<f64>, f64) {
@@ -199,8 +220,17 @@ fn sum_of_squares<P: Residuals>(problem: &P, parameters: &[f64]) -> (Vec<f64>, f
 }
 
 /// One run of the trust region, in parameters divided by `unit`. Where it stops is judged by [`polish`], whatever it says itself.
-fn trust_region<P: Residuals>(problem: &P, start: &[f64], unit: &[f64], patience: Patience) -> Vec<f64> {
-    let scaled = Scaled { problem, unit, at: DVector::from_iterator(start.len(), start.iter().zip(unit).map(|(p, s)| p / s)) };
+fn trust_region<P: Residuals>(
+    problem: &P,
+    start: &[f64],
+    unit: &[f64],
+    patience: Patience,
+) -> Vec<f64> {
+    let scaled = Scaled {
+        problem,
+        unit,
+        at: DVector::from_iterator(start.len(), start.iter().zip(unit).map(|(p, s)| p / s)),
+    };
     let (scaled, _report) = LevenbergMarquardt::new()
         .with_tol(TRUST_REGION_TOL)
         .with_gtol(TRUST_REGION_TOL)
@@ -236,7 +266,8 @@ impl<P: Residuals> LeastSquaresProblem<f64, Dyn, Dyn> for Scaled<'_, P> {
     }
     fn residuals(&self) -> Option<DVector<f64>> {
         let mut residuals = DVector::zeros(self.problem.n_residuals());
-        self.problem.residuals(&self.parameters(&self.at), residuals.as_mut_slice());
+        self.problem
+            .residuals(&self.parameters(&self.at), residuals.as_mut_slice());
         // A step into a region where the model overflows must be refused, not end the run: a huge residual does that.
         residuals.apply(|r| {
             if !r.is_finite() {
@@ -247,7 +278,8 @@ impl<P: Residuals> LeastSquaresProblem<f64, Dyn, Dyn> for Scaled<'_, P> {
     }
     fn jacobian(&self) -> Option<DMatrix<f64>> {
         let mut jacobian = DMatrix::zeros(self.problem.n_residuals(), self.unit.len());
-        self.problem.jacobian(&self.parameters(&self.at), &mut jacobian);
+        self.problem
+            .jacobian(&self.parameters(&self.at), &mut jacobian);
         for (mut column, s) in jacobian.column_iter_mut().zip(self.unit) {
             column *= *s;
         }
@@ -283,9 +315,21 @@ fn tangent<P: Residuals>(problem: &P, parameters: &[f64], residuals: &[f64]) -> 
             covariance_factor[(i, j)] /= length[i] * length[j];
         }
     }
-    let finite = step.iter().chain(covariance_factor.iter()).all(|v| v.is_finite());
-    let size = length.iter().zip(parameters).map(|(l, p)| l * p.abs()).fold(0.0, f64::max);
-    finite.then(|| Tangent { step, covariance_factor, removable: along.norm(), size })
+    let finite = step
+        .iter()
+        .chain(covariance_factor.iter())
+        .all(|v| v.is_finite());
+    let size = length
+        .iter()
+        .zip(parameters)
+        .map(|(l, p)| l * p.abs())
+        .fold(0.0, f64::max);
+    finite.then(|| Tangent {
+        step,
+        covariance_factor,
+        removable: along.norm(),
+        size,
+    })
 }
 
 /// Orthonormal columns (n × p) that span the tangent plane at `parameters`: what a fit takes out of the residuals.
@@ -297,7 +341,10 @@ pub fn tangent_basis<P: Residuals>(problem: &P, parameters: &[f64]) -> Option<DM
 }
 
 /// The Jacobian with columns of length one, and their lengths.
-fn scaled_jacobian<P: Residuals>(problem: &P, parameters: &[f64]) -> Option<(DMatrix<f64>, Vec<f64>)> {
+fn scaled_jacobian<P: Residuals>(
+    problem: &P,
+    parameters: &[f64],
+) -> Option<(DMatrix<f64>, Vec<f64>)> {
     let mut jacobian = DMatrix::zeros(problem.n_residuals(), parameters.len());
     problem.jacobian(parameters, &mut jacobian);
     let length: Vec<f64> = jacobian.column_iter().map(|column| column.norm()).collect();
@@ -320,16 +367,39 @@ struct Point {
 
 impl Point {
     /// The point `part` of a step away; None where the model is not finite there.
-    fn beyond<P: Residuals>(problem: &P, from: &[f64], step: &DVector<f64>, part: f64) -> Option<Self> {
-        let parameters: Vec<f64> = from.iter().zip(step.iter()).map(|(p, d)| p + part * d).collect();
+    fn beyond<P: Residuals>(
+        problem: &P,
+        from: &[f64],
+        step: &DVector<f64>,
+        part: f64,
+    ) -> Option<Self> {
+        let parameters: Vec<f64> = from
+            .iter()
+            .zip(step.iter())
+            .map(|(p, d)| p + part * d)
+            .collect();
         let (residuals, sum) = sum_of_squares(problem, &parameters);
-        let plane = if sum.is_finite() { tangent(problem, &parameters, &residuals) } else { None }?;
-        Some(Self { parameters, residuals, sum, plane })
+        let plane = if sum.is_finite() {
+            tangent(problem, &parameters, &residuals)
+        } else {
+            None
+        }?;
+        Some(Self {
+            parameters,
+            residuals,
+            sum,
+            plane,
+        })
     }
 }
 
 /// Gauss–Newton steps while the removable part of the residual falls and the relative offset is above `enough`, then the test of convergence.
-fn polish<P: Residuals>(problem: &P, start: &[f64], enough: f64, n_runs: usize) -> Result<Solution, LeastSquaresError> {
+fn polish<P: Residuals>(
+    problem: &P,
+    start: &[f64],
+    enough: f64,
+    n_runs: usize,
+) -> Result<Solution, LeastSquaresError> {
     let n_parameters = start.len();
     let singular = LeastSquaresError::Singular { n_parameters };
     let mut parameters = start.to_vec();
@@ -346,11 +416,27 @@ fn polish<P: Residuals>(problem: &P, start: &[f64], enough: f64, n_runs: usize) 
         }
         let full = Point::beyond(problem, &parameters, &plane.step, 1.0);
         // Where the residuals are large and the model bends, full steps overshoot and swing about the minimum; half steps then do not.
-        let slow = full.as_ref().is_none_or(|point| point.plane.removable > SLOW * plane.removable);
-        let half = if slow { Point::beyond(problem, &parameters, &plane.step, 0.5) } else { None };
-        let best = full.into_iter().chain(half).min_by(|a, b| a.plane.removable.total_cmp(&b.plane.removable));
-        let Some(next) = best.filter(|point| point.plane.removable < plane.removable) else { break };
-        Point { parameters, residuals, sum, plane } = next;
+        let slow = full
+            .as_ref()
+            .is_none_or(|point| point.plane.removable > SLOW * plane.removable);
+        let half = if slow {
+            Point::beyond(problem, &parameters, &plane.step, 0.5)
+        } else {
+            None
+        };
+        let best = full
+            .into_iter()
+            .chain(half)
+            .min_by(|a, b| a.plane.removable.total_cmp(&b.plane.removable));
+        let Some(next) = best.filter(|point| point.plane.removable < plane.removable) else {
+            break;
+        };
+        Point {
+            parameters,
+            residuals,
+            sum,
+            plane,
+        } = next;
     }
     let relative_offset = offset(sum, plane.removable);
     let step_negligible = plane.removable <= STEP_MAX_REL * plane.size;
@@ -359,5 +445,13 @@ fn polish<P: Residuals>(problem: &P, start: &[f64], enough: f64, n_runs: usize) 
         (false, true) => Ending::StepNegligible,
         (false, false) => return Err(LeastSquaresError::NotConverged { relative_offset }),
     };
-    Ok(Solution { parameters, residuals, sum_of_squares: sum, degrees_of_freedom, covariance_factor: plane.covariance_factor, ending, n_runs })
+    Ok(Solution {
+        parameters,
+        residuals,
+        sum_of_squares: sum,
+        degrees_of_freedom,
+        covariance_factor: plane.covariance_factor,
+        ending,
+        n_runs,
+    })
 }

@@ -21,4 +21,4 @@ pub use fit::{MIN_CYCLES, MotionFit, fit};
 pub use laws::LawTrial;
 pub use noise::ResidualDiagnosis;
 pub use position::{PositionRecord, PositionUse};
-pub use quantities::{ExternalTerms, MotionQuantities, quantities};
+pub use quantities::{ExternalTerms, MotionQuantities, period_shift_s, quantities};

@@ -79,32 +79,58 @@ pub(super) struct Residue<'a> {
 /// # Source
 /// Our form of the remedy of [Newey and West 1987](crate::sources::NeweyWest87), at one frequency; coverage is tested by simulation.
 pub(super) fn enlargement(residue: &Residue, omega: f64, decay_rate: f64) -> Enlargement {
-    let span = residue.tau_s.last().copied().unwrap_or(0.0) - residue.tau_s.first().copied().unwrap_or(0.0);
+    let span = residue.tau_s.last().copied().unwrap_or(0.0)
+        - residue.tau_s.first().copied().unwrap_or(0.0);
     let cycles = omega * span / TAU;
     let widest = BAND_HALF_WIDTH_BINS.max(BAND_HALF_WIDTH_LINES * decay_rate.abs() * span / TAU);
-    let half_width = (BAND_HALF_WIDTH_REL * cycles).min(widest).max(MIN_HALF_WIDTH_BINS).floor();
+    let half_width = (BAND_HALF_WIDTH_REL * cycles)
+        .min(widest)
+        .max(MIN_HALF_WIDTH_BINS)
+        .floor();
     let n = residue.tau_s.len() as f64;
     let highest = 0.5 * n;
     let around = bins(cycles - half_width, cycles + half_width, highest);
     let (level, ordinates) = spectrum_level(residue, TAU / span, &around);
-    let below = bins(1.0, (BAND_HALF_WIDTH_REL * cycles).min(BAND_HALF_WIDTH_BINS).max(1.0), highest);
+    let below = bins(
+        1.0,
+        (BAND_HALF_WIDTH_REL * cycles).clamp(1.0, BAND_HALF_WIDTH_BINS),
+        highest,
+    );
     let (level_zero, ordinates_zero) = spectrum_level(residue, TAU / span, &below);
     if residue.variance <= 0.0 || ordinates < MIN_ORDINATES {
-        return Enlargement { near_omega: 1.0, near_zero: 1.0, degrees_of_freedom: residue.degrees_of_freedom };
+        return Enlargement {
+            near_omega: 1.0,
+            near_zero: 1.0,
+            degrees_of_freedom: residue.degrees_of_freedom,
+        };
     }
     let near_omega = (level / residue.variance).max(1.0);
-    let near_zero = if ordinates_zero < MIN_ORDINATES { near_omega } else { (level_zero / residue.variance).max(1.0) };
-    Enlargement { near_omega, near_zero, degrees_of_freedom: residue.degrees_of_freedom.min(2.0 * ordinates) }
+    let near_zero = if ordinates_zero < MIN_ORDINATES {
+        near_omega
+    } else {
+        (level_zero / residue.variance).max(1.0)
+    };
+    Enlargement {
+        near_omega,
+        near_zero,
+        degrees_of_freedom: residue.degrees_of_freedom.min(2.0 * ordinates),
+    }
 }
 
 /// Frequencies in units of 1/span: `from`, `from` + 1, … up to `to`, those between the lowest that counts and half the rate of readings.
 fn bins(from: f64, to: f64, highest: f64) -> Vec<f64> {
-    (0..).map(|k| from + f64::from(k)).take_while(|bin| *bin <= to + 1e-9).filter(|bin| *bin >= LOWEST_BIN && *bin < highest).collect()
+    (0..)
+        .map(|k| from + f64::from(k))
+        .take_while(|bin| *bin <= to + 1e-9)
+        .filter(|bin| *bin >= LOWEST_BIN && *bin < highest)
+        .collect()
 }
 
 /// Mean level of the periodogram at the bins, per ordinate left over by the fit, and the number of these: Σ I/Σ(1 − h), Σ(1 − h).
 fn spectrum_level(residue: &Residue, bin_rad_per_s: f64, bins: &[f64]) -> (f64, f64) {
-    let Some(first) = bins.first() else { return (0.0, 0.0) };
+    let Some(first) = bins.first() else {
+        return (0.0, 0.0);
+    };
     let n_columns = residue.basis.ncols();
     // Sums for each bin: the residual's, then each basis column's, as cosine and sine parts.
     let mut sums = vec![[0.0; 2]; bins.len() * (n_columns + 1)];
@@ -122,7 +148,10 @@ fn spectrum_level(residue: &Residue, bin_rad_per_s: f64, bins: &[f64]) -> (f64, 
                 sum[0] += value * cos;
                 sum[1] += value * sin;
             }
-            (sin, cos) = (sin * step_cos + cos * step_sin, cos * step_cos - sin * step_sin);
+            (sin, cos) = (
+                sin * step_cos + cos * step_sin,
+                cos * step_cos - sin * step_sin,
+            );
         }
     }
     let n = residue.tau_s.len() as f64;
@@ -132,14 +161,24 @@ fn spectrum_level(residue: &Residue, bin_rad_per_s: f64, bins: &[f64]) -> (f64, 
         power += square(&sums[0]);
         ordinates += 1.0 - sums[1..].iter().map(square).sum::<f64>();
     }
-    (if ordinates > 0.0 { power / ordinates } else { 0.0 }, ordinates)
+    (
+        if ordinates > 0.0 {
+            power / ordinates
+        } else {
+            0.0
+        },
+        ordinates,
+    )
 }
 
 /// Lag-1 autocorrelation Σ(zᵢ − z̄)(zᵢ₊₁ − z̄)/Σ(zᵢ − z̄)², −1…1; 0 where all are equal.
 pub(super) fn autocorrelation_lag1(values: &[f64]) -> f64 {
     let mean = values.iter().sum::<f64>() / values.len() as f64;
     let total: f64 = values.iter().map(|v| (v - mean).powi(2)).sum();
-    let lagged: f64 = values.windows(2).map(|pair| (pair[0] - mean) * (pair[1] - mean)).sum();
+    let lagged: f64 = values
+        .windows(2)
+        .map(|pair| (pair[0] - mean) * (pair[1] - mean))
+        .sum();
     if total > 0.0 { lagged / total } else { 0.0 }
 }
 
@@ -152,7 +191,11 @@ pub(super) fn autocorrelation_lag1(values: &[f64]) -> f64 {
 pub(super) fn runs_test(values: &[f64], level: f64) -> (f64, f64) {
     let above = values.iter().filter(|v| **v >= level).count() as f64;
     let (n, below) = (values.len() as f64, values.len() as f64 - above);
-    let runs = 1.0 + values.windows(2).filter(|pair| (pair[0] >= level) != (pair[1] >= level)).count() as f64;
+    let runs = 1.0
+        + values
+            .windows(2)
+            .filter(|pair| (pair[0] >= level) != (pair[1] >= level))
+            .count() as f64;
     let expected = 2.0 * above * below / n + 1.0;
     let variance = (expected - 1.0) * (expected - 2.0) / (n - 1.0);
     if variance > 0.0 {
@@ -170,7 +213,10 @@ mod tests {
     fn lew() -> Vec<f64> {
         let text = include_str!("../../fixtures/reference/strd/univariate/Lew.dat");
         let data = text.rfind("\nData:").map_or("", |at| &text[at + 1..]);
-        data.lines().skip(1).filter_map(|line| line.trim().parse().ok()).collect()
+        data.lines()
+            .skip(1)
+            .filter_map(|line| line.trim().parse().ok())
+            .collect()
     }
 
     #[test]
@@ -187,7 +233,10 @@ mod tests {
     fn the_certified_autocorrelation_of_the_beam_comes_out() {
         // NIST StRD, Lew: −0.307304800605679, 14 digits certified.
         let r1 = autocorrelation_lag1(&lew());
-        assert!((r1 / -0.307_304_800_605_679 - 1.0).abs() < 1e-12, "r1 = {r1}");
+        assert!(
+            (r1 / -0.307_304_800_605_679 - 1.0).abs() < 1e-12,
+            "r1 = {r1}"
+        );
     }
 
     #[test]

@@ -40,7 +40,10 @@ impl Profile<'_> {
     /// [Venzon and Moolgavkar 1988](crate::sources::VenzonMoolgavkar88), by root finding on each end.
     pub(super) fn interval(&self, t: f64) -> [f64; 2] {
         let gamma = self.best.decay_rate_per_s;
-        [-t, t].map(|limit| self.end(limit).unwrap_or(gamma + limit * self.u_decay_rate_per_s))
+        [-t, t].map(|limit| {
+            self.end(limit)
+                .unwrap_or(gamma + limit * self.u_decay_rate_per_s)
+        })
     }
 
     /// The γ at the signed distance `limit`. The distance is nearly linear in γ, so a secant from the quadratic end is quick.
@@ -66,14 +69,28 @@ impl Profile<'_> {
 
     /// Signed root of the growth of the sum of squares at a held γ, in standard deviations, and the sinusoid there.
     fn distance(&self, gamma: f64, start: Sinusoid) -> Option<(f64, Sinusoid)> {
-        let problem = SinusoidProblem { readings: self.readings, weight_per_m: self.weight_per_m, held_decay_rate_per_s: Some(gamma) };
+        let problem = SinusoidProblem {
+            readings: self.readings,
+            weight_per_m: self.weight_per_m,
+            held_decay_rate_per_s: Some(gamma),
+        };
         let shift = gamma - start.decay_rate_per_s;
         let from = start.parameters();
-        let free = problem.free_parameters(std::array::from_fn(|i| from[i] + shift * self.slope[i]));
+        let free =
+            problem.free_parameters(std::array::from_fn(|i| from[i] + shift * self.slope[i]));
         let scale = problem.free_parameters(self.best.scale(self.readings.span_s()));
-        let solution = refine(&problem, &free).or_else(|_| minimise(&problem, &free, Some(&scale), Patience::Short)).ok()?;
+        let solution = refine(&problem, &free)
+            .or_else(|_| minimise(&problem, &free, Some(&scale), Patience::Short))
+            .ok()?;
         let growth = solution.sum_of_squares - self.sum_of_squares;
-        let distance = (growth.max(0.0) / self.variance).sqrt().copysign(gamma - self.best.decay_rate_per_s);
-        distance.is_finite().then(|| (distance, Sinusoid::from_parameters(problem.all_parameters(&solution.parameters))))
+        let distance = (growth.max(0.0) / self.variance)
+            .sqrt()
+            .copysign(gamma - self.best.decay_rate_per_s);
+        distance.is_finite().then(|| {
+            (
+                distance,
+                Sinusoid::from_parameters(problem.all_parameters(&solution.parameters)),
+            )
+        })
     }
 }

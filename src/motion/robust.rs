@@ -46,20 +46,44 @@ pub(super) struct Majority {
 /// # Source
 /// [Huber 1981](crate::sources::Huber81).
 pub(super) fn majority(readings: &Readings, starts: &[Guess]) -> Result<Majority, MotionError> {
-    let fits: Vec<Reweighted> = starts.iter().map(|start| reweighted(readings, start.sinusoid)).collect();
-    let smallest = fits.iter().map(|fit| fit.scale).fold(f64::INFINITY, f64::min);
-    let cost = |fit: &Reweighted| fit.normalised.iter().map(|z| (z.abs() / smallest).min(TRUNCATION).powi(2)).sum::<f64>();
-    let best = fits.into_iter().min_by(|a, b| cost(a).total_cmp(&cost(b))).ok_or(LeastSquaresError::NotFinite)?;
+    let fits: Vec<Reweighted> = starts
+        .iter()
+        .map(|start| reweighted(readings, start.sinusoid))
+        .collect();
+    let smallest = fits
+        .iter()
+        .map(|fit| fit.scale)
+        .fold(f64::INFINITY, f64::min);
+    let cost = |fit: &Reweighted| {
+        fit.normalised
+            .iter()
+            .map(|z| (z.abs() / smallest).min(TRUNCATION).powi(2))
+            .sum::<f64>()
+    };
+    let best = fits
+        .into_iter()
+        .min_by(|a, b| cost(a).total_cmp(&cost(b)))
+        .ok_or(LeastSquaresError::NotFinite)?;
     let n = readings.len() as f64;
     let degrees_of_freedom = n - best.sinusoid.parameters().len() as f64;
     let scale = best.scale * (n / degrees_of_freedom).sqrt();
-    let limit = scale * student_t_quantile(1.0 - 0.5 * FALSE_MARKS_PER_RECORD / n, MAD_EFFICIENCY * degrees_of_freedom);
+    let limit = scale
+        * student_t_quantile(
+            1.0 - 0.5 * FALSE_MARKS_PER_RECORD / n,
+            MAD_EFFICIENCY * degrees_of_freedom,
+        );
     let belongs: Vec<bool> = best.normalised.iter().map(|z| z.abs() <= limit).collect();
     let n_outliers = belongs.iter().filter(|b| !**b).count();
     if 3 * n_outliers > readings.len() {
-        return Err(MotionError::TooManyOutliers { n_outliers, n_positions: readings.len() });
+        return Err(MotionError::TooManyOutliers {
+            n_outliers,
+            n_positions: readings.len(),
+        });
     }
-    Ok(Majority { sinusoid: best.sinusoid, belongs })
+    Ok(Majority {
+        sinusoid: best.sinusoid,
+        belongs,
+    })
 }
 
 struct Reweighted {
@@ -72,7 +96,11 @@ struct Reweighted {
 
 fn reweighted(readings: &Readings, start: Sinusoid) -> Reweighted {
     let sigma = start.sigma_m(readings);
-    let (least, most) = sigma.iter().fold((f64::INFINITY, 0.0_f64), |(least, most), s| (least.min(*s), most.max(*s)));
+    let (least, most) = sigma
+        .iter()
+        .fold((f64::INFINITY, 0.0_f64), |(least, most), s| {
+            (least.min(*s), most.max(*s))
+        });
     let mut sinusoid = start;
     if most > MIXED_WEIGHTS * least {
         // From the guess even the best readings lie many of their σ off, and the majority by stated weights would be the poor ones.
@@ -84,18 +112,34 @@ fn reweighted(readings: &Readings, start: Sinusoid) -> Reweighted {
 }
 
 /// Reweights until the scale settles, with σ by `sigma_of` the current motion.
-fn settle(readings: &Readings, start: Sinusoid, sigma_of: impl Fn(&Sinusoid) -> Vec<f64>) -> Reweighted {
+fn settle(
+    readings: &Readings,
+    start: Sinusoid,
+    sigma_of: impl Fn(&Sinusoid) -> Vec<f64>,
+) -> Reweighted {
     let mut state = judge(readings, start, &sigma_of(&start));
     for _ in 0..MAX_STEPS {
         if state.scale <= rounding_floor(readings) {
             break;
         }
         let sigma = sigma_of(&state.sinusoid);
-        let weights: Vec<f64> = state.normalised.iter().zip(&sigma).map(|(z, s)| (1.0 - (z / (BIWEIGHT * state.scale)).powi(2)).max(0.0) / s).collect();
-        let problem = SinusoidProblem { readings, weight_per_m: &weights, held_decay_rate_per_s: None };
+        let weights: Vec<f64> = state
+            .normalised
+            .iter()
+            .zip(&sigma)
+            .map(|(z, s)| (1.0 - (z / (BIWEIGHT * state.scale)).powi(2)).max(0.0) / s)
+            .collect();
+        let problem = SinusoidProblem {
+            readings,
+            weight_per_m: &weights,
+            held_decay_rate_per_s: None,
+        };
         let from = state.sinusoid.parameters();
         let scale = state.sinusoid.scale(readings.span_s());
-        let stopped = refine(&problem, &from).map_or_else(|_| advance(&problem, &from, &scale), |solution| solution.parameters);
+        let stopped = refine(&problem, &from).map_or_else(
+            |_| advance(&problem, &from, &scale),
+            |solution| solution.parameters,
+        );
         let found = Sinusoid::from_parameters(problem.all_parameters(&stopped));
         let next = judge(readings, found, &sigma_of(&found));
         let settled = (next.scale / state.scale - 1.0).abs() < SCALE_SETTLED_REL;
@@ -108,13 +152,27 @@ fn settle(readings: &Readings, start: Sinusoid, sigma_of: impl Fn(&Sinusoid) -> 
 }
 
 fn judge(readings: &Readings, sinusoid: Sinusoid, sigma_m: &[f64]) -> Reweighted {
-    let normalised: Vec<f64> = readings.tau_s.iter().zip(&readings.x_m).zip(sigma_m).map(|((tau, x), s)| (x - sinusoid.position_m(*tau)) / s).collect();
+    let normalised: Vec<f64> = readings
+        .tau_s
+        .iter()
+        .zip(&readings.x_m)
+        .zip(sigma_m)
+        .map(|((tau, x), s)| (x - sinusoid.position_m(*tau)) / s)
+        .collect();
     let scale = median(normalised.iter().map(|z| z.abs()).collect()) / normal_quantile(0.75);
-    Reweighted { sinusoid, scale, normalised }
+    Reweighted {
+        sinusoid,
+        scale,
+        normalised,
+    }
 }
 
 /// The scale below which residuals are rounding errors.
 fn rounding_floor(readings: &Readings) -> f64 {
-    let spread = readings.x_m.iter().fold(0.0_f64, |most, x| most.max(x.abs())) + f64::EPSILON * readings.x_ref_m.abs() / ROUNDING_REL;
+    let spread = readings
+        .x_m
+        .iter()
+        .fold(0.0_f64, |most, x| most.max(x.abs()))
+        + f64::EPSILON * readings.x_ref_m.abs() / ROUNDING_REL;
     ROUNDING_REL * spread / median(readings.u_x_m.clone())
 }

@@ -14,7 +14,10 @@ pub(crate) struct Dual {
 
 impl Dual {
     pub(crate) fn constant(value: f64) -> Self {
-        Self { value, slope: [0.0; MAX_PARAMETERS] }
+        Self {
+            value,
+            slope: [0.0; MAX_PARAMETERS],
+        }
     }
     pub(crate) fn parameter(value: f64, index: usize) -> Self {
         let mut dual = Self::constant(value);
@@ -23,7 +26,10 @@ impl Dual {
     }
     /// f(self), given f and f′ there.
     fn chain(self, value: f64, derivative: f64) -> Self {
-        Self { value, slope: self.slope.map(|s| s * derivative) }
+        Self {
+            value,
+            slope: self.slope.map(|s| s * derivative),
+        }
     }
     pub(crate) fn exp(self) -> Self {
         self.chain(self.value.exp(), self.value.exp())
@@ -54,7 +60,11 @@ impl From<f64> for Dual {
     }
 }
 
-fn both(a: [f64; MAX_PARAMETERS], b: [f64; MAX_PARAMETERS], join: impl Fn(f64, f64) -> f64) -> [f64; MAX_PARAMETERS] {
+fn both(
+    a: [f64; MAX_PARAMETERS],
+    b: [f64; MAX_PARAMETERS],
+    join: impl Fn(f64, f64) -> f64,
+) -> [f64; MAX_PARAMETERS] {
     std::array::from_fn(|i| join(a[i], b[i]))
 }
 
@@ -62,21 +72,32 @@ impl<T: Into<Dual>> Add<T> for Dual {
     type Output = Self;
     fn add(self, other: T) -> Self {
         let other = other.into();
-        Self { value: self.value + other.value, slope: both(self.slope, other.slope, |a, b| a + b) }
+        Self {
+            value: self.value + other.value,
+            slope: both(self.slope, other.slope, |a, b| a + b),
+        }
     }
 }
 impl<T: Into<Dual>> Sub<T> for Dual {
     type Output = Self;
     fn sub(self, other: T) -> Self {
         let other = other.into();
-        Self { value: self.value - other.value, slope: both(self.slope, other.slope, |a, b| a - b) }
+        Self {
+            value: self.value - other.value,
+            slope: both(self.slope, other.slope, |a, b| a - b),
+        }
     }
 }
 impl<T: Into<Dual>> Mul<T> for Dual {
     type Output = Self;
     fn mul(self, other: T) -> Self {
         let other = other.into();
-        Self { value: self.value * other.value, slope: both(self.slope, other.slope, |a, b| a * other.value + self.value * b) }
+        Self {
+            value: self.value * other.value,
+            slope: both(self.slope, other.slope, |a, b| {
+                a * other.value + self.value * b
+            }),
+        }
     }
 }
 impl<T: Into<Dual>> Div<T> for Dual {
@@ -84,7 +105,12 @@ impl<T: Into<Dual>> Div<T> for Dual {
     fn div(self, other: T) -> Self {
         let other = other.into();
         let value = self.value / other.value;
-        Self { value, slope: both(self.slope, other.slope, |a, b| (a - value * b) / other.value) }
+        Self {
+            value,
+            slope: both(self.slope, other.slope, |a, b| {
+                (a - value * b) / other.value
+            }),
+        }
     }
 }
 impl Neg for Dual {
@@ -99,6 +125,10 @@ fn derivatives_agree_with_finite_differences() {
     let f = |b: Dual| (b.sin() * b.exp() - b.atan() / b.square()).powf(1.5) + b.cos().ln();
     let (at, step) = (1.2, 1e-6);
     let exact = f(Dual::parameter(at, 0)).slope[0];
-    let numeric = (f(Dual::constant(at + step)).value - f(Dual::constant(at - step)).value) / (2.0 * step);
-    assert!((exact / numeric - 1.0).abs() < 1e-8, "exact {exact}, numeric {numeric}");
+    let numeric =
+        (f(Dual::constant(at + step)).value - f(Dual::constant(at - step)).value) / (2.0 * step);
+    assert!(
+        (exact / numeric - 1.0).abs() < 1e-8,
+        "exact {exact}, numeric {numeric}"
+    );
 }

@@ -54,13 +54,17 @@ const SETS: [(&str, Model); 27] = [
 fn enso(b: &[Dual], x: &[f64]) -> Dual {
     let angle = 2.0 * PI * x[0];
     let (second, third) = (Dual::from(angle) / b[3], Dual::from(angle) / b[6]);
-    b[0] + b[1] * (angle / 12.0).cos() + b[2] * (angle / 12.0).sin()
-        + b[4] * second.cos() + b[5] * second.sin()
-        + b[7] * third.cos() + b[8] * third.sin()
+    b[0] + b[1] * (angle / 12.0).cos()
+        + b[2] * (angle / 12.0).sin()
+        + b[4] * second.cos()
+        + b[5] * second.sin()
+        + b[7] * third.cos()
+        + b[8] * third.sin()
 }
 
 fn gauss(b: &[Dual], x: &[f64]) -> Dual {
-    let peak = |height: Dual, at: Dual, width: Dual| height * (-((-at + x[0]) / width).square()).exp();
+    let peak =
+        |height: Dual, at: Dual, width: Dual| height * (-((-at + x[0]) / width).square()).exp();
     b[0] * (-b[1] * x[0]).exp() + peak(b[2], b[3], b[4]) + peak(b[5], b[6], b[7])
 }
 
@@ -95,7 +99,11 @@ impl Residuals for Certified {
         }
     }
     fn jacobian(&self, parameters: &[f64], out: &mut DMatrix<f64>) {
-        let b: Vec<Dual> = parameters.iter().enumerate().map(|(j, p)| Dual::parameter(*p, j)).collect();
+        let b: Vec<Dual> = parameters
+            .iter()
+            .enumerate()
+            .map(|(j, p)| Dual::parameter(*p, j))
+            .collect();
         for (i, x) in self.x.iter().enumerate() {
             let slope = (self.model)(&b, x).slope;
             for j in 0..b.len() {
@@ -107,9 +115,16 @@ impl Residuals for Certified {
 
 /// Reads a `.dat` file. Its own line numbers do not hold, so rows are known by their form.
 fn read(name: &str, model: Model) -> Result<Certified, Box<dyn Error>> {
-    let path = format!("{}/fixtures/reference/strd/nonlinear/{name}.dat", env!("CARGO_MANIFEST_DIR"));
+    let path = format!(
+        "{}/fixtures/reference/strd/nonlinear/{name}.dat",
+        env!("CARGO_MANIFEST_DIR")
+    );
     let text = std::fs::read_to_string(path)?;
-    let numbers = |line: &str| line.split_whitespace().map_while(|word| word.parse().ok()).collect::<Vec<f64>>();
+    let numbers = |line: &str| {
+        line.split_whitespace()
+            .map_while(|word| word.parse().ok())
+            .collect::<Vec<f64>>()
+    };
     let rows: Vec<Vec<f64>> = text
         .lines()
         .filter(|line| line.trim_start().starts_with('b'))
@@ -117,12 +132,29 @@ fn read(name: &str, model: Model) -> Result<Certified, Box<dyn Error>> {
         .filter(|row| row.len() == 4)
         .collect();
     let column = |j: usize| rows.iter().map(|row| row[j]).collect::<Vec<f64>>();
-    let sum_line = text.lines().find(|line| line.starts_with("Residual Sum of Squares")).ok_or("no sum of squares")?;
+    let sum_line = text
+        .lines()
+        .find(|line| line.starts_with("Residual Sum of Squares"))
+        .ok_or("no sum of squares")?;
     let (_, sum) = sum_line.split_once(':').ok_or("no colon")?;
     let at = text.rfind("\nData:").ok_or("no data")?;
-    let data: Vec<Vec<f64>> = text[at + 1..].lines().skip(1).map(numbers).filter(|row| row.len() > 1).collect();
+    let data: Vec<Vec<f64>> = text[at + 1..]
+        .lines()
+        .skip(1)
+        .map(numbers)
+        .filter(|row| row.len() > 1)
+        .collect();
     // Nelson's model is for the logarithm of its response.
-    let y = data.iter().map(|row| if name == "Nelson" { row[0].ln() } else { row[0] }).collect();
+    let y = data
+        .iter()
+        .map(|row| {
+            if name == "Nelson" {
+                row[0].ln()
+            } else {
+                row[0]
+            }
+        })
+        .collect();
     Ok(Certified {
         model,
         y,
@@ -139,9 +171,16 @@ fn digits(got: &[f64], certified: &[f64]) -> f64 {
     assert_eq!(got.len(), certified.len());
     let lre = |(g, c): (&f64, &f64)| {
         let error = ((g - c) / c).abs();
-        if error.is_finite() { (-error.log10()).clamp(0.0, DIGITS_CERTIFIED) } else { 0.0 }
+        if error.is_finite() {
+            (-error.log10()).clamp(0.0, DIGITS_CERTIFIED)
+        } else {
+            0.0
+        }
     };
-    got.iter().zip(certified).map(lre).fold(DIGITS_CERTIFIED, f64::min)
+    got.iter()
+        .zip(certified)
+        .map(lre)
+        .fold(DIGITS_CERTIFIED, f64::min)
 }
 
 #[test]
@@ -161,10 +200,21 @@ fn nist_results_are_reached_from_both_starts_to_six_digits_or_more() -> Result<(
             let lre = digits(&fit.parameters, &problem.parameters);
             let lre_sd = digits(&fit.standard_uncertainties(), &problem.deviations);
             let lre_sum = digits(&[fit.sum_of_squares], &[problem.sum_of_squares]);
-            println!("{name:<10} {:>5} {lre:>12.1} {lre_sd:>11.1} {lre_sum:>15.1} {:>5}", i + 1, fit.n_runs);
-            let scatter_wanted = if name == "Lanczos1" { LANCZOS1_DIGITS_OF_SCATTER } else { DIGITS_WANTED };
+            println!(
+                "{name:<10} {:>5} {lre:>12.1} {lre_sd:>11.1} {lre_sum:>15.1} {:>5}",
+                i + 1,
+                fit.n_runs
+            );
+            let scatter_wanted = if name == "Lanczos1" {
+                LANCZOS1_DIGITS_OF_SCATTER
+            } else {
+                DIGITS_WANTED
+            };
             if !(lre >= DIGITS_WANTED && lre_sd >= scatter_wanted && lre_sum >= scatter_wanted) {
-                short.push(format!("{name} start {}: {lre:.1} {lre_sd:.1} {lre_sum:.1}", i + 1));
+                short.push(format!(
+                    "{name} start {}: {lre:.1} {lre_sd:.1} {lre_sum:.1}",
+                    i + 1
+                ));
             }
         }
     }

@@ -5,10 +5,23 @@ use ebbmark::motion::{ExternalTerms, MotionError, PositionRecord, PositionUse, f
 use proptest::prelude::*;
 use std::f64::consts::{PI, TAU};
 
-const NO_TERMS: ExternalTerms = ExternalTerms { u_clock_rel: 0.0, clock_assumed: false, u_scale_rel: None, scale_assumed: false };
+const NO_TERMS: ExternalTerms = ExternalTerms {
+    u_clock_rel: 0.0,
+    clock_assumed: false,
+    u_scale_rel: None,
+    scale_assumed: false,
+};
 
 fn record_of(x_m: impl Fn(f64) -> f64, rate_hz: f64, n: u32) -> Vec<PositionRecord> {
-    (0..n).map(|i| f64::from(i) / rate_hz).map(|t_s| PositionRecord { t_s, u_t_s: 0.0, x_m: x_m(t_s), u_x_m: 1e-4 }).collect()
+    (0..n)
+        .map(|i| f64::from(i) / rate_hz)
+        .map(|t_s| PositionRecord {
+            t_s,
+            u_t_s: 0.0,
+            x_m: x_m(t_s),
+            u_x_m: 1e-4,
+        })
+        .collect()
 }
 
 proptest! {
@@ -70,11 +83,21 @@ fn a_tenth_of_wild_values_is_marked_and_does_not_move_the_result() {
             noise[*i] += 0.3 * ((i * 7919 % 13) as f64 - 6.5);
         }
         let fit = fit(&truth.record(30.0, &noise)).expect("a motion");
-        assert!(wild.iter().all(|i| fit.uses[*i] == PositionUse::Outlier), "ζ = {zeta}: a wild value was used");
-        let n_marked = fit.uses.iter().filter(|u| **u == PositionUse::Outlier).count();
+        assert!(
+            wild.iter().all(|i| fit.uses[*i] == PositionUse::Outlier),
+            "ζ = {zeta}: a wild value was used"
+        );
+        let n_marked = fit
+            .uses
+            .iter()
+            .filter(|u| **u == PositionUse::Outlier)
+            .count();
         assert_eq!(n_marked, wild.len(), "ζ = {zeta}: a sound value was marked");
         let u = fit.covariance[3][3].sqrt();
-        assert!((fit.damped_angular_frequency_rad_per_s - truth.omega_rad_per_s).abs() < 4.0 * u, "ζ = {zeta}");
+        assert!(
+            (fit.damped_angular_frequency_rad_per_s - truth.omega_rad_per_s).abs() < 4.0 * u,
+            "ζ = {zeta}"
+        );
     }
 }
 
@@ -82,10 +105,18 @@ fn a_tenth_of_wild_values_is_marked_and_does_not_move_the_result() {
 fn gaussian_noise_is_hardly_ever_marked() {
     // 0.01 false marks a record are meant; 60 records of 10⁴, 1000 and 40 readings make 1.8 expected, and 8 has probability 5e-4.
     let truth = Truth::rail(0.001);
-    let marks: usize = [(2, 10_000), (58, 1000), (120, 40)].into_iter().flat_map(|(records, n)| (0..records).map(move |seed| (n, seed))).map(|(n, seed)| {
-        let fit = fit(&truth.record(15.0, &errors(n, 1e-3, 0.0, 500 + seed))).expect("a motion");
-        fit.uses.iter().filter(|u| **u == PositionUse::Outlier).count()
-    }).sum();
+    let marks: usize = [(2, 10_000), (58, 1000), (120, 40)]
+        .into_iter()
+        .flat_map(|(records, n)| (0..records).map(move |seed| (n, seed)))
+        .map(|(n, seed)| {
+            let fit =
+                fit(&truth.record(15.0, &errors(n, 1e-3, 0.0, 500 + seed))).expect("a motion");
+            fit.uses
+                .iter()
+                .filter(|u| **u == PositionUse::Outlier)
+                .count()
+        })
+        .sum();
     assert!(marks < 8, "{marks} false marks");
 }
 
@@ -94,16 +125,30 @@ fn uncertain_times_lower_the_weight_where_the_motion_is_fast() {
     // Every second time is wrong by ±5 ms and says so; the sharp half must decide.
     let truth = Truth::rail(0.002);
     let (jitter, noise) = (errors(900, 5e-3, 0.0, 3), errors(900, 1e-5, 0.0, 4));
-    let stated: Vec<PositionRecord> = (0..900_usize).map(|i| {
-        let t_s = i as f64 / 30.0;
-        let u_t_s = if i % 2 == 0 { 5e-3 } else { 0.0 };
-        PositionRecord { t_s, u_t_s, x_m: truth.position_m(t_s + if i % 2 == 0 { jitter[i] } else { 0.0 }) + noise[i], u_x_m: 1e-5 }
-    }).collect();
+    let stated: Vec<PositionRecord> = (0..900_usize)
+        .map(|i| {
+            let t_s = i as f64 / 30.0;
+            let u_t_s = if i % 2 == 0 { 5e-3 } else { 0.0 };
+            PositionRecord {
+                t_s,
+                u_t_s,
+                x_m: truth.position_m(t_s + if i % 2 == 0 { jitter[i] } else { 0.0 }) + noise[i],
+                u_x_m: 1e-5,
+            }
+        })
+        .collect();
     let fit = fit(&stated).expect("a motion");
-    assert!(fit.uses.iter().all(|u| *u == PositionUse::Used), "a late reading is no outlier where its time says so");
+    assert!(
+        fit.uses.iter().all(|u| *u == PositionUse::Used),
+        "a late reading is no outlier where its time says so"
+    );
     let u_s = quantities(&fit, &NO_TERMS).period.u.expect("a figure");
     // The 450 sharp readings alone give √24·σ/A·T²/(2π·√450·30 s) = 1.8e-7 s; with the blurred ones at full weight it would be 100 times that.
-    assert!(u_s < 2.5e-7 && (fit.period_s() - truth.period_s()).abs() < 4.0 * u_s, "{:e}, u = {u_s:e}", fit.period_s() - truth.period_s());
+    assert!(
+        u_s < 2.5e-7 && (fit.period_s() - truth.period_s()).abs() < 4.0 * u_s,
+        "{:e}, u = {u_s:e}",
+        fit.period_s() - truth.period_s()
+    );
 }
 
 #[test]
@@ -112,10 +157,19 @@ fn a_loss_that_may_be_zero_gives_bounds_and_no_quality_factor() {
     let fit = fit(&records).expect("a motion");
     assert!(fit.decay_rate_interval95_per_s[0] < 0.0 && fit.decay_rate_interval95_per_s[1] > 0.0);
     let found = quantities(&fit, &NO_TERMS);
-    assert_eq!((found.quality_factor.value, found.quality_factor.interval95[1]), (None, None));
+    assert_eq!(
+        (
+            found.quality_factor.value,
+            found.quality_factor.interval95[1]
+        ),
+        (None, None)
+    );
     let lower = found.quality_factor.interval95[0].expect("a lower bound");
     let upper = found.damping_ratio.interval95[1].expect("an upper bound");
-    assert!((lower * 2.0 * upper - 1.0).abs() < 1e-3, "Q ≥ {lower} and ζ ≤ {upper} are one statement");
+    assert!(
+        (lower * 2.0 * upper - 1.0).abs() < 1e-3,
+        "Q ≥ {lower} and ζ ≤ {upper} are one statement"
+    );
     assert_eq!(found.energy_loss_per_cycle.interval95[0], Some(0.0));
     assert!(!fit.laws[0].excluded, "{}", fit.laws[0].reason);
 }
@@ -123,16 +177,46 @@ fn a_loss_that_may_be_zero_gives_bounds_and_no_quality_factor() {
 #[test]
 fn a_loss_that_shows_excludes_the_lossless_law_and_clock_and_scale_enter_where_they_belong() {
     let fit = fit(&Truth::rail(0.01).record(20.0, &errors(400, 1e-4, 0.0, 5))).expect("a motion");
-    assert!(fit.laws[0].excluded && fit.laws[0].law == "none" && !fit.laws[1].excluded, "{}", fit.laws[0].reason);
-    let terms = ExternalTerms { u_clock_rel: 1e-3, clock_assumed: true, u_scale_rel: Some(2e-3), scale_assumed: false };
+    assert!(
+        fit.laws[0].excluded && fit.laws[0].law == "none" && !fit.laws[1].excluded,
+        "{}",
+        fit.laws[0].reason
+    );
+    let terms = ExternalTerms {
+        u_clock_rel: 1e-3,
+        clock_assumed: true,
+        u_scale_rel: Some(2e-3),
+        scale_assumed: false,
+    };
     let (bare, full) = (quantities(&fit, &NO_TERMS), quantities(&fit, &terms));
     let u = |quantity: &ebbmark::uncertainty::Quantity| quantity.u.expect("a figure");
-    let grown = |with: f64, without: f64, value: f64, relative: f64| ((with.powi(2) - without.powi(2)).sqrt() / (relative * value) - 1.0).abs() < 1e-6;
-    assert!(grown(u(&full.period), u(&bare.period), fit.period_s(), 1e-3));
-    assert!(grown(u(&full.decay_rate), u(&bare.decay_rate), fit.decay_rate_per_s, 1e-3));
-    assert!(grown(u(&full.amplitude), u(&bare.amplitude), fit.amplitude_m, 2e-3));
+    let grown = |with: f64, without: f64, value: f64, relative: f64| {
+        ((with.powi(2) - without.powi(2)).sqrt() / (relative * value) - 1.0).abs() < 1e-6
+    };
+    assert!(grown(
+        u(&full.period),
+        u(&bare.period),
+        fit.period_s(),
+        1e-3
+    ));
+    assert!(grown(
+        u(&full.decay_rate),
+        u(&bare.decay_rate),
+        fit.decay_rate_per_s,
+        1e-3
+    ));
+    assert!(grown(
+        u(&full.amplitude),
+        u(&bare.amplitude),
+        fit.amplitude_m,
+        2e-3
+    ));
     assert_eq!(full.damping_ratio, bare.damping_ratio, "the clock cancels");
-    let clock = full.budget.iter().find(|row| row.quantity == "period" && row.unit == "1").expect("a clock row");
+    let clock = full
+        .budget
+        .iter()
+        .find(|row| row.quantity == "period" && row.unit == "1")
+        .expect("a clock row");
     assert!(clock.assumed && clock.degrees_of_freedom.is_none());
 }
 
@@ -141,33 +225,70 @@ fn growing_oscillation_has_a_negative_decay_rate_and_no_half_life() {
     let fit = fit(&Truth::rail(-0.003).record(20.0, &errors(300, 1e-4, 0.0, 9))).expect("a motion");
     assert!(fit.decay_rate_interval95_per_s[1] < 0.0);
     let half_life = quantities(&fit, &NO_TERMS).half_life;
-    assert_eq!((half_life.value, half_life.interval95), (None, [None, None]));
+    assert_eq!(
+        (half_life.value, half_life.interval95),
+        (None, [None, None])
+    );
 }
 
 #[test]
 fn noise_is_no_motion() {
     for seed in 0..20 {
         for n in [12, 60, 900] {
-            let records: Vec<PositionRecord> = record_of(|_| 0.2, 30.0, n).into_iter().zip(errors(n as usize, 1e-3, 0.0, seed)).map(|(r, e)| PositionRecord { x_m: r.x_m + e, ..r }).collect();
-            let error = fit(&records).map(|fit| fit.amplitude_m).expect_err("only noise");
-            assert!(matches!(error, MotionError::NoMotion { .. }), "seed {seed}, {n} readings: {error:?}");
+            let records: Vec<PositionRecord> = record_of(|_| 0.2, 30.0, n)
+                .into_iter()
+                .zip(errors(n as usize, 1e-3, 0.0, seed))
+                .map(|(r, e)| PositionRecord {
+                    x_m: r.x_m + e,
+                    ..r
+                })
+                .collect();
+            let error = fit(&records)
+                .map(|fit| fit.amplitude_m)
+                .expect_err("only noise");
+            assert!(
+                matches!(error, MotionError::NoMotion { .. }),
+                "seed {seed}, {n} readings: {error:?}"
+            );
         }
     }
 }
 
 #[test]
 fn a_marker_at_rest_is_no_motion() {
-    assert!(matches!(fit(&record_of(|_| 0.2, 30.0, 300)), Err(MotionError::NoMotion { .. })));
+    assert!(matches!(
+        fit(&record_of(|_| 0.2, 30.0, 300)),
+        Err(MotionError::NoMotion { .. })
+    ));
 }
 
 #[test]
 fn a_slide_without_return_is_no_oscillation() {
     let slide = |t_s: f64| 0.3 * (1.0 - (-t_s / 2.0).exp());
-    for x_m in [Box::new(slide) as Box<dyn Fn(f64) -> f64>, Box::new(|t_s: f64| 0.05 * t_s), Box::new(|t_s: f64| 0.02 * t_s * t_s)] {
+    for x_m in [
+        Box::new(slide) as Box<dyn Fn(f64) -> f64>,
+        Box::new(|t_s: f64| 0.05 * t_s),
+        Box::new(|t_s: f64| 0.02 * t_s * t_s),
+    ] {
         let noise = errors(300, 1e-4, 0.0, 2);
-        let records: Vec<PositionRecord> = record_of(x_m, 30.0, 300).into_iter().zip(noise).map(|(r, e)| PositionRecord { x_m: r.x_m + e, ..r }).collect();
-        let error = fit(&records).map(|fit| fit.amplitude_m).expect_err("no oscillation");
-        assert!(matches!(error, MotionError::NoOscillation { .. } | MotionError::TooShort { .. }), "{error:?}");
+        let records: Vec<PositionRecord> = record_of(x_m, 30.0, 300)
+            .into_iter()
+            .zip(noise)
+            .map(|(r, e)| PositionRecord {
+                x_m: r.x_m + e,
+                ..r
+            })
+            .collect();
+        let error = fit(&records)
+            .map(|fit| fit.amplitude_m)
+            .expect_err("no oscillation");
+        assert!(
+            matches!(
+                error,
+                MotionError::NoOscillation { .. } | MotionError::TooShort { .. }
+            ),
+            "{error:?}"
+        );
     }
 }
 
@@ -175,10 +296,23 @@ fn a_slide_without_return_is_no_oscillation() {
 fn a_random_walk_is_no_oscillation() {
     for seed in 0..20 {
         let mut x_m = 0.0;
-        let walk: Vec<f64> = errors(600, 1e-3, 0.0, seed).into_iter().map(|step| { x_m += step; x_m }).collect();
-        let records: Vec<PositionRecord> = record_of(|_| 0.0, 30.0, 600).into_iter().zip(walk).map(|(r, x_m)| PositionRecord { x_m, ..r }).collect();
+        let walk: Vec<f64> = errors(600, 1e-3, 0.0, seed)
+            .into_iter()
+            .map(|step| {
+                x_m += step;
+                x_m
+            })
+            .collect();
+        let records: Vec<PositionRecord> = record_of(|_| 0.0, 30.0, 600)
+            .into_iter()
+            .zip(walk)
+            .map(|(r, x_m)| PositionRecord { x_m, ..r })
+            .collect();
         let found = fit(&records).map(|fit| (fit.period_s(), fit.amplitude_m, fit.residual));
-        assert!(found.is_err(), "seed {seed} passed for an oscillation: {found:?}");
+        assert!(
+            found.is_err(),
+            "seed {seed} passed for an oscillation: {found:?}"
+        );
     }
 }
 
@@ -186,9 +320,16 @@ fn a_random_walk_is_no_oscillation() {
 fn one_cycle_is_too_short_and_the_length_needed_is_said() {
     let truth = Truth::rail(0.005);
     match fit(&truth.record(60.0, &errors(78, 1e-5, 0.0, 1))) {
-        Err(MotionError::TooShort { cycles, duration_needed_s, .. }) => {
+        Err(MotionError::TooShort {
+            cycles,
+            duration_needed_s,
+            ..
+        }) => {
             assert!((cycles - 77.0 / 72.0).abs() < 0.02, "{cycles}");
-            assert!((duration_needed_s - 1.8).abs() < 0.04, "{duration_needed_s}");
+            assert!(
+                (duration_needed_s - 1.8).abs() < 0.04,
+                "{duration_needed_s}"
+            );
         }
         other => panic!("{:?}", other.map(|fit| fit.period_s())),
     }
@@ -196,8 +337,13 @@ fn one_cycle_is_too_short_and_the_length_needed_is_said() {
 
 #[test]
 fn too_few_readings_a_cycle_are_refused_with_the_rate_needed() {
-    let error = fit(&record_of(|t_s| 0.1 * (TAU * 14.3 * t_s).cos(), 30.0, 300)).map(|fit| fit.period_s()).expect_err("2.1 readings a cycle");
-    assert!(matches!(error, MotionError::AboveNyquist { .. }), "{error:?}");
+    let error = fit(&record_of(|t_s| 0.1 * (TAU * 14.3 * t_s).cos(), 30.0, 300))
+        .map(|fit| fit.period_s())
+        .expect_err("2.1 readings a cycle");
+    assert!(
+        matches!(error, MotionError::AboveNyquist { .. }),
+        "{error:?}"
+    );
 }
 
 #[test]
@@ -209,5 +355,8 @@ fn a_record_of_which_half_is_off_the_motion_is_refused() {
         *e += w;
     }
     let found = fit(&Truth::rail(0.003).record(30.0, &noise)).map(|fit| fit.amplitude_m);
-    assert!(matches!(found, Err(MotionError::TooManyOutliers { .. })), "{found:?}");
+    assert!(
+        matches!(found, Err(MotionError::TooManyOutliers { .. })),
+        "{found:?}"
+    );
 }

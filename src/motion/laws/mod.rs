@@ -80,34 +80,86 @@ pub struct LawTrial {
 /// # Source
 /// [Hurvich and Tsai 1989](crate::sources::HurvichTsai89) for AICc.
 pub(super) fn trials(weighted: &Weighted) -> Result<Vec<LawTrial>, LeastSquaresError> {
-    let fits: Vec<(&Law, LawFit)> = LAWS.iter().map(|law| Ok((law, (law.fit)(weighted)?))).collect::<Result<_, LeastSquaresError>>()?;
-    let lowest = fits.iter().map(|(_, fit)| aicc(fit, weighted)).fold(f64::INFINITY, f64::min);
-    Ok(fits.iter().map(|(law, fit)| {
-        let container = fits.iter().find(|(other, _)| law.nested_in == Some(other.key));
-        let (excluded, reason) = judge(law, fit, container.map(|(law, fit)| (*law, fit)), aicc(fit, weighted) - lowest, weighted);
-        LawTrial { law: law.key, parameters: fit.parameters.clone(), rms_m: rms_m(fit, weighted), aicc: aicc(fit, weighted), excluded, reason }
-    }).collect())
+    let fits: Vec<(&Law, LawFit)> = LAWS
+        .iter()
+        .map(|law| Ok((law, (law.fit)(weighted)?)))
+        .collect::<Result<_, LeastSquaresError>>()?;
+    let lowest = fits
+        .iter()
+        .map(|(_, fit)| aicc(fit, weighted))
+        .fold(f64::INFINITY, f64::min);
+    Ok(fits
+        .iter()
+        .map(|(law, fit)| {
+            let container = fits
+                .iter()
+                .find(|(other, _)| law.nested_in == Some(other.key));
+            let (excluded, reason) = judge(
+                law,
+                fit,
+                container.map(|(law, fit)| (*law, fit)),
+                aicc(fit, weighted) - lowest,
+                weighted,
+            );
+            LawTrial {
+                law: law.key,
+                parameters: fit.parameters.clone(),
+                rms_m: rms_m(fit, weighted),
+                aicc: aicc(fit, weighted),
+                excluded,
+                reason,
+            }
+        })
+        .collect())
 }
 
-fn judge(law: &Law, fit: &LawFit, container: Option<(&Law, &LawFit)>, above_lowest: f64, weighted: &Weighted) -> (bool, String) {
+fn judge(
+    law: &Law,
+    fit: &LawFit,
+    container: Option<(&Law, &LawFit)>,
+    above_lowest: f64,
+    weighted: &Weighted,
+) -> (bool, String) {
     let by_aicc = above_lowest > AICC_MARGIN;
-    let verdict = |excluded: bool| if excluded { "ruled out" } else { "not ruled out" };
+    let verdict = |excluded: bool| {
+        if excluded {
+            "ruled out"
+        } else {
+            "not ruled out"
+        }
+    };
     if let Some((wider, wider_fit)) = container {
         let extra = (wider_fit.n_free - fit.n_free) as f64;
-        let variance = weighted.enlargement * wider_fit.sum_of_squares / (weighted.readings.len() - wider_fit.n_free) as f64;
-        let f = if variance > 0.0 { (fit.sum_of_squares - wider_fit.sum_of_squares).max(0.0) / extra / variance } else { 0.0 };
+        let variance = weighted.enlargement * wider_fit.sum_of_squares
+            / (weighted.readings.len() - wider_fit.n_free) as f64;
+        let f = if variance > 0.0 {
+            (fit.sum_of_squares - wider_fit.sum_of_squares).max(0.0) / extra / variance
+        } else {
+            0.0
+        };
         let p = f_upper(f, extra, weighted.degrees_of_freedom);
         let excluded = p < SIGNIFICANCE || by_aicc;
-        let chance = if p < 1e-4 { "p < 0.0001".to_owned() } else { format!("p = {p:.4}") };
+        let chance = if p < 1e-4 {
+            "p < 0.0001".to_owned()
+        } else {
+            format!("p = {p:.4}")
+        };
         let reason = format!(
             "Motion {} leaves {:.2e} m rms against {:.2e} m {} (F = {f:.2} with {extra:.0} and {:.0} degrees of freedom, {chance}), so it is {}.",
-            law.described, rms_m(fit, weighted), rms_m(wider_fit, weighted), wider.described, weighted.degrees_of_freedom, verdict(excluded),
+            law.described,
+            rms_m(fit, weighted),
+            rms_m(wider_fit, weighted),
+            wider.described,
+            weighted.degrees_of_freedom,
+            verdict(excluded),
         );
         return (excluded, reason);
     }
     let reason = format!(
         "Motion {} leaves {:.2e} m rms; its AICc lies {above_lowest:.1} above the lowest (limit {AICC_MARGIN}), so it is {}.",
-        law.described, rms_m(fit, weighted), verdict(by_aicc),
+        law.described,
+        rms_m(fit, weighted),
+        verdict(by_aicc),
     );
     (by_aicc, reason)
 }
@@ -123,5 +175,7 @@ fn aicc(fit: &LawFit, weighted: &Weighted) -> f64 {
     // Where hardly more effective readings than parameters are left the correction has no meaning; 1 keeps it finite and large.
     let room = (n_effective - k - 1.0).max(1.0);
     // A fit without residuals would have −∞: the smallest positive number stands for what rounding hides.
-    n_effective * (fit.sum_of_squares / n).max(f64::MIN_POSITIVE).ln() + 2.0 * k + 2.0 * k * (k + 1.0) / room
+    n_effective * (fit.sum_of_squares / n).max(f64::MIN_POSITIVE).ln()
+        + 2.0 * k
+        + 2.0 * k * (k + 1.0) / room
 }

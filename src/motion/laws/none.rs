@@ -3,4 +3,9 @@
 use super::{Law, viscous};
 
 /// The law's row in the table.
-pub(super) const LAW: Law = Law { key: "none", described: "without loss", nested_in: Some("viscous"), fit: |weighted| viscous::fit(weighted, Some(0.0)) };
+pub(super) const LAW: Law = Law {
+    key: "none",
+    described: "without loss",
+    nested_in: Some("viscous"),
+    fit: |weighted| viscous::fit(weighted, Some(0.0)),
+};

@@ -6,7 +6,12 @@ use crate::motion::readings::Readings;
 use nalgebra::DMatrix;
 
 /// The law's row in the table.
-pub(super) const LAW: Law = Law { key: "viscous", described: "with viscous loss", nested_in: None, fit: |weighted| fit(weighted, None) };
+pub(super) const LAW: Law = Law {
+    key: "viscous",
+    described: "with viscous loss",
+    nested_in: None,
+    fit: |weighted| fit(weighted, None),
+};
 
 /// The five parameters of the damped sinusoid, at τ = 0 the first reading.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -26,7 +31,13 @@ pub(in crate::motion) struct Sinusoid {
 impl Sinusoid {
     /// From (A, φ, γ, ω, c), brought to A ≥ 0, ω ≥ 0 and φ in (−π, π].
     pub(in crate::motion) fn from_parameters(p: [f64; 5]) -> Self {
-        let [mut amplitude_m, mut phase_rad, decay_rate_per_s, mut omega_rad_per_s, centre_m] = p;
+        let [
+            mut amplitude_m,
+            mut phase_rad,
+            decay_rate_per_s,
+            mut omega_rad_per_s,
+            centre_m,
+        ] = p;
         if omega_rad_per_s < 0.0 {
             (omega_rad_per_s, phase_rad) = (-omega_rad_per_s, -phase_rad);
         }
@@ -35,16 +46,34 @@ impl Sinusoid {
         }
         let turn = std::f64::consts::TAU;
         phase_rad -= turn * ((phase_rad - std::f64::consts::PI) / turn).ceil();
-        Self { amplitude_m, phase_rad, decay_rate_per_s, omega_rad_per_s, centre_m }
+        Self {
+            amplitude_m,
+            phase_rad,
+            decay_rate_per_s,
+            omega_rad_per_s,
+            centre_m,
+        }
     }
     /// (A, φ, γ, ω, c).
     pub(in crate::motion) fn parameters(&self) -> [f64; 5] {
-        [self.amplitude_m, self.phase_rad, self.decay_rate_per_s, self.omega_rad_per_s, self.centre_m]
+        [
+            self.amplitude_m,
+            self.phase_rad,
+            self.decay_rate_per_s,
+            self.omega_rad_per_s,
+            self.centre_m,
+        ]
     }
     /// The same motion with τ counted from `shift_s` later.
-    pub(in crate::motion) fn from_later(&self, shift_s: f64) -> Self {
+    pub(in crate::motion) fn counted_from(&self, shift_s: f64) -> Self {
         let [a, phi, gamma, omega, c] = self.parameters();
-        Self::from_parameters([a * (-gamma * shift_s).exp(), phi + omega * shift_s, gamma, omega, c])
+        Self::from_parameters([
+            a * (-gamma * shift_s).exp(),
+            phi + omega * shift_s,
+            gamma,
+            omega,
+            c,
+        ])
     }
     /// Position at τ, m.
     pub(in crate::motion) fn position_m(&self, tau_s: f64) -> f64 {
@@ -59,32 +88,72 @@ impl Sinusoid {
     }
     /// Standard uncertainty of each reading: √(u_x² + (v u_t)²), m.
     pub(in crate::motion) fn sigma_m(&self, readings: &Readings) -> Vec<f64> {
-        let u = readings.u_x_m.iter().zip(&readings.u_t_s).zip(&readings.tau_s);
-        u.map(|((u_x, u_t), tau)| if *u_t > 0.0 { u_x.hypot(self.velocity_m_per_s(*tau) * u_t) } else { *u_x }).collect()
+        let u = readings
+            .u_x_m
+            .iter()
+            .zip(&readings.u_t_s)
+            .zip(&readings.tau_s);
+        u.map(|((u_x, u_t), tau)| {
+            if *u_t > 0.0 {
+                u_x.hypot(self.velocity_m_per_s(*tau) * u_t)
+            } else {
+                *u_x
+            }
+        })
+        .collect()
     }
     /// Steps that matter for each parameter: parts of the amplitude, a radian, and a radian over the record.
     pub(in crate::motion) fn scale(&self, span_s: f64) -> [f64; 5] {
-        [self.amplitude_m, 1.0, 1.0 / span_s, 1.0 / span_s, self.amplitude_m]
+        [
+            self.amplitude_m,
+            1.0,
+            1.0 / span_s,
+            1.0 / span_s,
+            self.amplitude_m,
+        ]
     }
 }
 
 /// Fits the sinusoid, with γ free or held, starting from the weighted readings' own.
-pub(super) fn fit(weighted: &Weighted, held_decay_rate_per_s: Option<f64>) -> Result<LawFit, LeastSquaresError> {
-    let Weighted { readings, weight_per_m, start, enlargement, .. } = *weighted;
-    let problem = SinusoidProblem { readings, weight_per_m, held_decay_rate_per_s };
+pub(super) fn fit(
+    weighted: &Weighted,
+    held_decay_rate_per_s: Option<f64>,
+) -> Result<LawFit, LeastSquaresError> {
+    let Weighted {
+        readings,
+        weight_per_m,
+        start,
+        enlargement,
+        ..
+    } = *weighted;
+    let problem = SinusoidProblem {
+        readings,
+        weight_per_m,
+        held_decay_rate_per_s,
+    };
     let mut from = start.parameters();
     if let Some(gamma) = held_decay_rate_per_s {
         // The projection on a sinusoid that decays at the held rate: the mean of what the envelopes differ by.
         let n = readings.len() as f64;
-        from[0] *= readings.tau_s.iter().map(|tau| (-(start.decay_rate_per_s - gamma) * tau).exp()).sum::<f64>() / n;
+        from[0] *= readings
+            .tau_s
+            .iter()
+            .map(|tau| (-(start.decay_rate_per_s - gamma) * tau).exp())
+            .sum::<f64>()
+            / n;
     }
     let scale = problem.free_parameters(start.scale(readings.span_s()));
     let free = problem.free_parameters(from);
-    let solution = refine(&problem, &free).or_else(|_| minimise(&problem, &free, Some(&scale), Patience::Long))?;
+    let solution = refine(&problem, &free)
+        .or_else(|_| minimise(&problem, &free, Some(&scale), Patience::Long))?;
     let fitted = Sinusoid::from_parameters(problem.all_parameters(&solution.parameters));
-    let mut u = solution.standard_uncertainties().into_iter().map(|u| u * enlargement.sqrt());
+    let mut u = solution
+        .standard_uncertainties()
+        .into_iter()
+        .map(|u| u * enlargement.sqrt());
     let [amplitude, phase, gamma, omega, centre] = fitted.parameters();
-    let mut row = |key, value, held: bool, unit| (key, value, if held { None } else { u.next() }, unit);
+    let mut row =
+        |key, value, held: bool, unit| (key, value, if held { None } else { u.next() }, unit);
     let parameters = vec![
         row("amplitude", amplitude, false, "m"),
         row("phase", phase, false, "rad"),
@@ -92,7 +161,11 @@ pub(super) fn fit(weighted: &Weighted, held_decay_rate_per_s: Option<f64>) -> Re
         row("damped_angular_frequency", omega, false, "rad/s"),
         row("centre", centre + readings.x_ref_m, false, "m"),
     ];
-    Ok(LawFit { parameters, sum_of_squares: solution.sum_of_squares, n_free: solution.parameters.len() })
+    Ok(LawFit {
+        parameters,
+        sum_of_squares: solution.sum_of_squares,
+        n_free: solution.parameters.len(),
+    })
 }
 
 /// The weighted problem: parameters (A, φ, γ, ω, c), or (A, φ, ω, c) where γ is held.
@@ -118,7 +191,11 @@ impl SinusoidProblem<'_> {
     }
     /// Those that are not held.
     pub(in crate::motion) fn free_parameters(&self, p: [f64; 5]) -> Vec<f64> {
-        if self.held_decay_rate_per_s.is_some() { vec![p[0], p[1], p[3], p[4]] } else { p.to_vec() }
+        if self.held_decay_rate_per_s.is_some() {
+            vec![p[0], p[1], p[3], p[4]]
+        } else {
+            p.to_vec()
+        }
     }
 }
 
@@ -130,7 +207,8 @@ impl Residuals for SinusoidProblem<'_> {
         let [a, phi, gamma, omega, c] = self.all_parameters(parameters);
         for (i, r) in out.iter_mut().enumerate() {
             let tau = self.readings.tau_s[i];
-            *r = (a * (-gamma * tau).exp() * (omega * tau + phi).cos() + c - self.readings.x_m[i]) * self.weight_per_m[i];
+            *r = (a * (-gamma * tau).exp() * (omega * tau + phi).cos() + c - self.readings.x_m[i])
+                * self.weight_per_m[i];
         }
     }
     fn jacobian(&self, parameters: &[f64], out: &mut DMatrix<f64>) {
@@ -140,8 +218,18 @@ impl Residuals for SinusoidProblem<'_> {
             let tau = self.readings.tau_s[i];
             let envelope = w * (-gamma * tau).exp();
             let (sin, cos) = (omega * tau + phi).sin_cos();
-            let row = [envelope * cos, -a * envelope * sin, -a * envelope * tau * cos, -a * envelope * tau * sin, *w];
-            let columns = row.into_iter().enumerate().filter(|(j, _)| free || *j != 2).map(|(_, v)| v);
+            let row = [
+                envelope * cos,
+                -a * envelope * sin,
+                -a * envelope * tau * cos,
+                -a * envelope * tau * sin,
+                *w,
+            ];
+            let columns = row
+                .into_iter()
+                .enumerate()
+                .filter(|(j, _)| free || *j != 2)
+                .map(|(_, v)| v);
             for (j, v) in columns.enumerate() {
                 out[(i, j)] = v;
             }
@@ -150,6 +238,7 @@ impl Residuals for SinusoidProblem<'_> {
 }
 
 #[cfg(test)]
+#[allow(clippy::expect_used, reason = "a failed expectation is a failed test")]
 mod tests {
     use super::*;
     use crate::motion::PositionRecord;
@@ -158,7 +247,12 @@ mod tests {
     const BOUND_TOL_REL: f64 = 1e-10;
 
     fn readings(truth: Sinusoid, rate_hz: f64, n: u32) -> Readings {
-        let at = |i| PositionRecord { t_s: f64::from(i) / rate_hz, u_t_s: 0.0, x_m: truth.position_m(f64::from(i) / rate_hz), u_x_m: 1.0 };
+        let at = |i| PositionRecord {
+            t_s: f64::from(i) / rate_hz,
+            u_t_s: 0.0,
+            x_m: truth.position_m(f64::from(i) / rate_hz),
+            u_x_m: 1.0,
+        };
         Readings::new(&(0..n).map(at).collect::<Vec<_>>()).expect("a sound record")
     }
 
@@ -166,33 +260,82 @@ mod tests {
     fn the_covariance_is_the_cramer_rao_bound() {
         let text = include_str!("../../../fixtures/reference/oscillation/crb_damped_sinusoid.csv");
         for line in text.lines().skip(1) {
-            let row: Vec<f64> = line.split(',').map(|cell| cell.parse().expect("a number")).collect();
-            let [a, gamma, omega, phi, rate_hz, n, sigma, u_a, u_gamma, u_omega, u_phi, u_c, u_period, _] = row[..] else {
-                panic!("14 columns: {line}");
+            let row: Vec<f64> = line
+                .split(',')
+                .map(|cell| cell.parse().expect("a number"))
+                .collect();
+            let row: [f64; 14] = row.try_into().expect("14 columns");
+            let [
+                a,
+                gamma,
+                omega,
+                phi,
+                rate_hz,
+                n,
+                sigma,
+                u_a,
+                u_gamma,
+                u_omega,
+                u_phi,
+                u_c,
+                u_period,
+                _,
+            ] = row;
+            let truth = Sinusoid {
+                amplitude_m: a,
+                phase_rad: phi,
+                decay_rate_per_s: gamma,
+                omega_rad_per_s: omega,
+                centre_m: 0.0,
             };
-            let truth = Sinusoid { amplitude_m: a, phase_rad: phi, decay_rate_per_s: gamma, omega_rad_per_s: omega, centre_m: 0.0 };
-            #[expect(clippy::cast_possible_truncation, clippy::cast_sign_loss, reason = "a count of the table")]
+            #[expect(
+                clippy::cast_possible_truncation,
+                clippy::cast_sign_loss,
+                reason = "a count of the table"
+            )]
             let readings = readings(truth, rate_hz, n as u32);
             let weight_per_m = vec![1.0 / sigma; readings.len()];
-            let problem = SinusoidProblem { readings: &readings, weight_per_m: &weight_per_m, held_decay_rate_per_s: None };
+            let problem = SinusoidProblem {
+                readings: &readings,
+                weight_per_m: &weight_per_m,
+                held_decay_rate_per_s: None,
+            };
             let mut start = truth.parameters();
             start[4] -= readings.x_ref_m;
-            let factor = refine(&problem, &start).expect("at the minimum already").covariance_factor;
+            let factor = refine(&problem, &start)
+                .expect("at the minimum already")
+                .covariance_factor;
             let got: Vec<f64> = (0..5).map(|j| factor[(j, j)].sqrt()).collect();
             for (got, want) in got.iter().zip([u_a, u_phi, u_gamma, u_omega, u_c]) {
-                assert!((got / want - 1.0).abs() < BOUND_TOL_REL, "got {got:e}, want {want:e} in {line}");
+                assert!(
+                    (got / want - 1.0).abs() < BOUND_TOL_REL,
+                    "got {got:e}, want {want:e} in {line}"
+                );
             }
-            assert!((got[3] * std::f64::consts::TAU / omega.powi(2) / u_period - 1.0).abs() < BOUND_TOL_REL);
+            assert!(
+                (got[3] * std::f64::consts::TAU / omega.powi(2) / u_period - 1.0).abs()
+                    < BOUND_TOL_REL
+            );
         }
     }
 
     #[test]
     fn the_jacobian_agrees_with_differences_away_from_the_solution() {
-        let truth = Sinusoid { amplitude_m: 0.1, phase_rad: 0.3, decay_rate_per_s: 0.05, omega_rad_per_s: 5.0, centre_m: 0.02 };
+        let truth = Sinusoid {
+            amplitude_m: 0.1,
+            phase_rad: 0.3,
+            decay_rate_per_s: 0.05,
+            omega_rad_per_s: 5.0,
+            centre_m: 0.02,
+        };
         let readings = readings(truth, 10.0, 40);
         let weight_per_m = vec![3.0; 40];
         for held_decay_rate_per_s in [None, Some(0.02)] {
-            let problem = SinusoidProblem { readings: &readings, weight_per_m: &weight_per_m, held_decay_rate_per_s };
+            let problem = SinusoidProblem {
+                readings: &readings,
+                weight_per_m: &weight_per_m,
+                held_decay_rate_per_s,
+            };
             let at = problem.free_parameters([0.13, -0.4, 0.02, 5.3, -0.01]);
             let mut jacobian = DMatrix::zeros(40, at.len());
             problem.jacobian(&at, &mut jacobian);
@@ -208,7 +351,11 @@ mod tests {
                 };
                 for (i, (plus, minus)) in side(1.0).into_iter().zip(side(-1.0)).enumerate() {
                     let difference = (plus - minus) / (2.0 * step);
-                    assert!((difference - jacobian[(i, j)]).abs() < 1e-8, "row {i}, column {j}: {difference} against {}", jacobian[(i, j)]);
+                    assert!(
+                        (difference - jacobian[(i, j)]).abs() < 1e-8,
+                        "row {i}, column {j}: {difference} against {}",
+                        jacobian[(i, j)]
+                    );
                 }
             }
         }
@@ -217,9 +364,16 @@ mod tests {
     #[test]
     fn a_negative_amplitude_is_half_a_turn_and_the_phase_stays_in_its_range() {
         let turned = Sinusoid::from_parameters([-2.0, 3.0, 0.1, 5.0, 0.0]);
-        assert!((turned.amplitude_m - 2.0).abs() < 1e-15 && (turned.phase_rad - (3.0 - std::f64::consts::PI)).abs() < 1e-15);
+        assert!(
+            (turned.amplitude_m - 2.0).abs() < 1e-15
+                && (turned.phase_rad - (3.0 - std::f64::consts::PI)).abs() < 1e-15
+        );
         let edge = Sinusoid::from_parameters([1.0, -std::f64::consts::PI, 0.0, 1.0, 0.0]);
-        assert!((edge.phase_rad - std::f64::consts::PI).abs() < 1e-15, "−π counts as π: {}", edge.phase_rad);
+        assert!(
+            (edge.phase_rad - std::f64::consts::PI).abs() < 1e-15,
+            "−π counts as π: {}",
+            edge.phase_rad
+        );
     }
 
     #[test]
@@ -228,15 +382,43 @@ mod tests {
         // (fixtures/reference/README.md). Three of its readings stand out and would be marked, so the law is fitted here without the marks.
         let text = include_str!("../../../fixtures/reference/strd/univariate/Lew.dat");
         let data = text.rfind("\nData:").map_or("", |at| &text[at + 1..]);
-        let x_m = data.lines().skip(1).filter_map(|line| line.trim().parse::<f64>().ok());
-        let records: Vec<PositionRecord> = (1..).zip(x_m).map(|(i, x_m)| PositionRecord { t_s: f64::from(i), u_t_s: 0.0, x_m, u_x_m: 1.0 }).collect();
+        let x_m = data
+            .lines()
+            .skip(1)
+            .filter_map(|line| line.trim().parse::<f64>().ok());
+        let records: Vec<PositionRecord> = (1..)
+            .zip(x_m)
+            .map(|(i, x_m)| PositionRecord {
+                t_s: f64::from(i),
+                u_t_s: 0.0,
+                x_m,
+                u_x_m: 1.0,
+            })
+            .collect();
         let readings = Readings::new(&records).expect("a sound record");
-        let start = Sinusoid { amplitude_m: 300.0, phase_rad: 2.0, decay_rate_per_s: 0.0, omega_rad_per_s: 1.896, centre_m: 0.0 };
-        let weighted = Weighted { readings: &readings, weight_per_m: &[1.0; 200], start, enlargement: 1.0, degrees_of_freedom: 196.0 };
+        let start = Sinusoid {
+            amplitude_m: 300.0,
+            phase_rad: 2.0,
+            decay_rate_per_s: 0.0,
+            omega_rad_per_s: 1.896,
+            centre_m: 0.0,
+        };
+        let weighted = Weighted {
+            readings: &readings,
+            weight_per_m: &[1.0; 200],
+            start,
+            enlargement: 1.0,
+            degrees_of_freedom: 196.0,
+        };
         let fitted = fit(&weighted, Some(0.0)).expect("a minimum");
         let [amplitude, omega, centre] = [0, 3, 4].map(|i| fitted.parameters[i].1);
         let deviation = (fitted.sum_of_squares / 196.0).sqrt();
-        let pairs = [(amplitude, 343.288_566), (omega / std::f64::consts::TAU, 0.301_807_037), (centre, -178.768_157), (deviation, 134.066_400_94)];
+        let pairs = [
+            (amplitude, 343.288_566),
+            (omega / std::f64::consts::TAU, 0.301_807_037),
+            (centre, -178.768_157),
+            (deviation, 134.066_400_94),
+        ];
         for (got, want) in pairs {
             assert!((got / want - 1.0).abs() < 3e-9, "got {got}, want {want}");
         }
