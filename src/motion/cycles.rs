@@ -4,7 +4,7 @@
 //! readings are outliers, and (by ω, γ, c) the shape over a quarter of a cycle. A period that changes with amplitude, or a jump, therefore shows
 //! here while the fit averages over it.
 
-use super::laws::{Sinusoid, SinusoidProblem};
+use super::sinusoid::{Sinusoid, SinusoidProblem};
 use super::least_squares::refine;
 use super::readings::Readings;
 use super::{MotionFit, PositionRecord, PositionUse};

@@ -3,7 +3,7 @@
 //! In: the weighted readings and their least-squares sinusoid. Out: the two γ at which the smallest sum of squares over all other
 //! parameters has grown by t²·s²·(enlargement): the ends of the interval, unequal where the sum is no parabola in γ.
 
-use super::laws::{Sinusoid, SinusoidProblem};
+use super::sinusoid::{Sinusoid, SinusoidProblem};
 use super::least_squares::{Patience, minimise, refine};
 use super::readings::Readings;
 

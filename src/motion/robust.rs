@@ -5,7 +5,7 @@
 
 use super::MotionError;
 use super::guess::Guess;
-use super::laws::{Sinusoid, SinusoidProblem};
+use super::sinusoid::{Sinusoid, SinusoidProblem};
 use super::least_squares::{LeastSquaresError, advance, refine};
 use super::readings::{Readings, median};
 use crate::stats::{normal_quantile, student_t_quantile};

@@ -5,10 +5,9 @@
 mod none;
 mod viscous;
 
-pub(super) use viscous::{Sinusoid, SinusoidProblem};
-
 use super::least_squares::LeastSquaresError;
 use super::readings::Readings;
+use super::sinusoid::Sinusoid;
 use crate::stats::f_upper;
 
 /// A law is ruled out by the nested test where its misfit would be so large by chance less often than this, as a 95 % interval rules out.
