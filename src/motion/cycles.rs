@@ -4,9 +4,9 @@
 //! readings are outliers, and (by ω, γ, c) the shape over a quarter of a cycle. A period that changes with amplitude, or a jump, therefore shows
 //! here while the fit averages over it.
 
-use super::sinusoid::{Sinusoid, SinusoidProblem};
 use super::least_squares::refine;
 use super::readings::Readings;
+use super::sinusoid::{Sinusoid, SinusoidProblem};
 use super::{MotionFit, PositionRecord, PositionUse};
 use nalgebra::{DMatrix, DVector, Matrix2, Vector2};
 use std::f64::consts::{FRAC_PI_2, TAU};

@@ -245,4 +245,65 @@ mod tests {
         let (z, _) = runs_test(&[1.0, 1.0, -1.0, 1.0, -1.0, -1.0, 1.0, -1.0], 0.0);
         assert!((z - 1.0 / (12.0_f64 / 7.0).sqrt()).abs() < 1e-14, "z = {z}");
     }
+
+    /// The basis of a fit that takes out a constant, a cosine and a sine at bin `bin` of n readings: orthonormal as it stands.
+    fn basis(n: usize, bin: f64) -> DMatrix<f64> {
+        let norm = (2.0 / n as f64).sqrt();
+        let angle = |i: usize| TAU * bin * i as f64 / n as f64;
+        DMatrix::from_fn(n, 3, |i, j| match j {
+            0 => norm / 2.0_f64.sqrt(),
+            1 => norm * angle(i).cos(),
+            _ => norm * angle(i).sin(),
+        })
+    }
+
+    /// Mean level near ω of the residuals of 400 records of 256 readings, bin 10, whose neighbours correlate by `lag1`, over their variance.
+    fn mean_level(lag1: f64) -> f64 {
+        use rand::SeedableRng;
+        use rand_distr::{Distribution, StandardNormal};
+        let (n, bin, records) = (256, 10.0, 400);
+        let (basis, tau_s) = (basis(n, bin), (0..n).map(|i| i as f64).collect::<Vec<_>>());
+        let mut rng = rand_chacha::ChaCha8Rng::seed_from_u64(5);
+        let bins: Vec<f64> = (3..18).map(f64::from).collect();
+        let mut sum = 0.0;
+        for _ in 0..records {
+            let mut last: f64 = StandardNormal.sample(&mut rng);
+            let noise = nalgebra::DVector::from_fn(n, |_, _| {
+                let fresh: f64 = StandardNormal.sample(&mut rng);
+                last = lag1 * last + (1.0 - lag1 * lag1).sqrt() * fresh;
+                last
+            });
+            let left = &noise - &basis * (basis.transpose() * &noise);
+            let degrees_of_freedom = (n - 3) as f64;
+            let variance = left.norm_squared() / degrees_of_freedom;
+            let residue = Residue {
+                tau_s: &tau_s,
+                normalised: left.as_slice(),
+                basis: &basis,
+                variance,
+                degrees_of_freedom,
+            };
+            sum += spectrum_level(&residue, TAU / n as f64, &bins).0 / variance;
+        }
+        sum / f64::from(records)
+    }
+
+    #[test]
+    fn the_spectrum_of_independent_errors_is_one_although_the_fit_has_taken_part_of_it() {
+        // 14 ordinates of 2 degrees of freedom and 400 records: the mean is known to 1/√(14·400) = 1.3 %; four times that is allowed.
+        let level = mean_level(0.0);
+        assert!((level - 1.0).abs() < 0.054, "{level}");
+    }
+
+    #[test]
+    fn the_spectrum_of_correlated_errors_is_the_one_of_theory() {
+        // (1 − a²)/(1 − 2a cos ω + a²), mean over the bins 3…17 without 10, ω = 2π·bin/256, a = 0.6.
+        let a: f64 = 0.6;
+        let theory = |bin: i32| {
+            (1.0 - a * a) / (1.0 - 2.0 * a * (TAU * f64::from(bin) / 256.0).cos() + a * a)
+        };
+        let want = (3..18).filter(|bin| *bin != 10).map(theory).sum::<f64>() / 14.0;
+        let level = mean_level(a);
+        assert!((level / want - 1.0).abs() < 0.06, "{level} against {want}");
+    }
 }

@@ -2,7 +2,9 @@
 
 use super::MotionError;
 use super::laws::Weighted;
-use super::least_squares::{LeastSquaresError, Patience, Solution, minimise, refine, tangent_basis};
+use super::least_squares::{
+    LeastSquaresError, Patience, Solution, minimise, refine, tangent_basis,
+};
 use super::noise::{self, Enlargement, ResidualDiagnosis, Residue};
 use super::readings::{Readings, median};
 use super::refusal::{dense_enough, long_enough, stands_out};
@@ -194,4 +196,3 @@ impl<'a> Plain<'a> {
         })
     }
 }
-

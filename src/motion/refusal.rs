@@ -52,7 +52,11 @@ pub(super) fn stands_out(left: f64, n_readings: usize, n_effective: f64) -> bool
 }
 
 /// What to say where the fit itself failed: noise, too short a record and too low a rate are the usual causes, and the scan knows them.
-pub(super) fn why_not_fitted(readings: &Readings, starts: &[Guess], error: MotionError) -> MotionError {
+pub(super) fn why_not_fitted(
+    readings: &Readings,
+    starts: &[Guess],
+    error: MotionError,
+) -> MotionError {
     let n = readings.len() as f64;
     let Some(best) = starts.first() else {
         return MotionError::NoMotion {
@@ -81,4 +85,3 @@ pub(super) fn why_not_fitted(readings: &Readings, starts: &[Guess], error: Motio
         .err()
         .unwrap_or(error)
 }
-

@@ -5,9 +5,9 @@
 
 use super::MotionError;
 use super::guess::Guess;
-use super::sinusoid::{Sinusoid, SinusoidProblem};
 use super::least_squares::{LeastSquaresError, advance, refine};
 use super::readings::{Readings, median};
+use super::sinusoid::{Sinusoid, SinusoidProblem};
 use crate::stats::{normal_quantile, student_t_quantile};
 
 /// Tukey's constant: 95 % efficiency for Gaussian noise.

@@ -9,8 +9,14 @@
 //! * one test of convergence for every ending, the relative offset of Bates and Watts, which is in units of the result's own
 //!   uncertainty and needs no tolerance in the problem's units.
 
-use levenberg_marquardt::{LeastSquaresProblem, LevenbergMarquardt};
-use nalgebra::{DMatrix, DVector, Dyn, Owned};
+mod tangent;
+mod trust_region;
+
+pub use tangent::tangent_basis;
+
+use nalgebra::{DMatrix, DVector};
+use tangent::{Tangent, tangent};
+use trust_region::trust_region;
 
 /// A minimum is accepted where the relative offset is below this: the estimate is then within 1e-6 of the radius of its confidence region.
 const RELATIVE_OFFSET_MAX: f64 = 1e-6;
@@ -23,8 +29,6 @@ const MAX_RUNS: usize = 3;
 const MAX_POLISH_STEPS: usize = 40;
 /// A step that leaves more than this part of what it should remove is slow.
 const SLOW: f64 = 0.3;
-/// Tolerance handed to the trust region: the rounding of a double, so that it stops only where it can do no more.
-const TRUST_REGION_TOL: f64 = f64::EPSILON;
 
 /// A weighted least-squares problem: residuals rᵢ = (model − reading)ᵢ/σᵢ and their derivatives.
 ///
@@ -219,144 +223,6 @@ fn sum_of_squares<P: Residuals>(problem: &P, parameters: &[f64]) -> (Vec<f64>, f
     (residuals, sum)
 }
 
-/// One run of the trust region, in parameters divided by `unit`. Where it stops is judged by [`polish`], whatever it says itself.
-fn trust_region<P: Residuals>(
-    problem: &P,
-    start: &[f64],
-    unit: &[f64],
-    patience: Patience,
-) -> Vec<f64> {
-    let scaled = Scaled {
-        problem,
-        unit,
-        at: DVector::from_iterator(start.len(), start.iter().zip(unit).map(|(p, s)| p / s)),
-    };
-    let (scaled, _report) = LevenbergMarquardt::new()
-        .with_tol(TRUST_REGION_TOL)
-        .with_gtol(TRUST_REGION_TOL)
-        .with_scale_diag(false)
-        .with_patience(patience.evaluations_per_parameter())
-        .minimize(scaled);
-    scaled.parameters(&scaled.at)
-}
-
-/// The problem in the form, and in the parameters' units, that the trust region takes.
-struct Scaled<'a, P> {
-    problem: &'a P,
-    unit: &'a [f64],
-    at: DVector<f64>,
-}
-
-impl<P> Scaled<'_, P> {
-    fn parameters(&self, at: &DVector<f64>) -> Vec<f64> {
-        at.iter().zip(self.unit).map(|(q, s)| q * s).collect()
-    }
-}
-
-impl<P: Residuals> LeastSquaresProblem<f64, Dyn, Dyn> for Scaled<'_, P> {
-    type ResidualStorage = Owned<f64, Dyn>;
-    type JacobianStorage = Owned<f64, Dyn, Dyn>;
-    type ParameterStorage = Owned<f64, Dyn>;
-
-    fn set_params(&mut self, at: &DVector<f64>) {
-        self.at.copy_from(at);
-    }
-    fn params(&self) -> DVector<f64> {
-        self.at.clone()
-    }
-    fn residuals(&self) -> Option<DVector<f64>> {
-        let mut residuals = DVector::zeros(self.problem.n_residuals());
-        self.problem
-            .residuals(&self.parameters(&self.at), residuals.as_mut_slice());
-        // A step into a region where the model overflows must be refused, not end the run: a huge residual does that.
-        residuals.apply(|r| {
-            if !r.is_finite() {
-                *r = 1e100;
-            }
-        });
-        Some(residuals)
-    }
-    fn jacobian(&self) -> Option<DMatrix<f64>> {
-        let mut jacobian = DMatrix::zeros(self.problem.n_residuals(), self.unit.len());
-        self.problem
-            .jacobian(&self.parameters(&self.at), &mut jacobian);
-        for (mut column, s) in jacobian.column_iter_mut().zip(self.unit) {
-            column *= *s;
-        }
-        jacobian.iter().all(|v| v.is_finite()).then_some(jacobian)
-    }
-}
-
-/// The tangent plane at a point: what a Gauss–Newton step, the convergence test and the covariance need.
-struct Tangent {
-    step: DVector<f64>,
-    covariance_factor: DMatrix<f64>,
-    /// ‖Qᵀr‖: the part of the residual that a step in the tangent plane would remove.
-    removable: f64,
-    /// Largest ‖∂r/∂pⱼ‖·|pⱼ|: the size of the model, in the residuals' units.
-    size: f64,
-}
-
-/// QR of the Jacobian with columns scaled to length one: normal equations would lose half the digits.
-fn tangent<P: Residuals>(problem: &P, parameters: &[f64], residuals: &[f64]) -> Option<Tangent> {
-    let n_parameters = parameters.len();
-    let (jacobian, length) = scaled_jacobian(problem, parameters)?;
-    let qr = jacobian.qr();
-    let mut rotated = DVector::from_column_slice(residuals);
-    qr.q_tr_mul(&mut rotated);
-    let along = rotated.rows(0, n_parameters).into_owned();
-    let r = qr.r();
-    let r_inverse = r.solve_upper_triangular(&DMatrix::identity(n_parameters, n_parameters))?;
-    let mut step = -(&r_inverse * &along);
-    let mut covariance_factor = &r_inverse * r_inverse.transpose();
-    for i in 0..n_parameters {
-        step[i] /= length[i];
-        for j in 0..n_parameters {
-            covariance_factor[(i, j)] /= length[i] * length[j];
-        }
-    }
-    let finite = step
-        .iter()
-        .chain(covariance_factor.iter())
-        .all(|v| v.is_finite());
-    let size = length
-        .iter()
-        .zip(parameters)
-        .map(|(l, p)| l * p.abs())
-        .fold(0.0, f64::max);
-    finite.then(|| Tangent {
-        step,
-        covariance_factor,
-        removable: along.norm(),
-        size,
-    })
-}
-
-/// Orthonormal columns (n × p) that span the tangent plane at `parameters`: what a fit takes out of the residuals.
-///
-/// None where the model is not finite there or does not depend on a parameter.
-pub fn tangent_basis<P: Residuals>(problem: &P, parameters: &[f64]) -> Option<DMatrix<f64>> {
-    let (jacobian, _) = scaled_jacobian(problem, parameters)?;
-    Some(jacobian.qr().q())
-}
-
-/// The Jacobian with columns of length one, and their lengths.
-fn scaled_jacobian<P: Residuals>(
-    problem: &P,
-    parameters: &[f64],
-) -> Option<(DMatrix<f64>, Vec<f64>)> {
-    let mut jacobian = DMatrix::zeros(problem.n_residuals(), parameters.len());
-    problem.jacobian(parameters, &mut jacobian);
-    let length: Vec<f64> = jacobian.column_iter().map(|column| column.norm()).collect();
-    if length.iter().any(|l| !l.is_finite() || *l <= 0.0) {
-        return None;
-    }
-    for (mut column, l) in jacobian.column_iter_mut().zip(&length) {
-        column /= *l;
-    }
-    Some((jacobian, length))
-}
-
 /// Parameters with all that a step from them needs.
 struct Point {
     parameters: Vec<f64>,
@@ -454,4 +320,103 @@ fn polish<P: Residuals>(
         ending,
         n_runs,
     })
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// y = p₀ + p₁x², with a third parameter that does nothing where `idle` is true.
+    struct Parabola {
+        x: Vec<f64>,
+        y: Vec<f64>,
+        idle: bool,
+    }
+
+    impl Residuals for Parabola {
+        fn n_residuals(&self) -> usize {
+            self.x.len()
+        }
+        fn residuals(&self, p: &[f64], out: &mut [f64]) {
+            for (r, (x, y)) in out.iter_mut().zip(self.x.iter().zip(&self.y)) {
+                *r = p[0] + p[1] * x * x - y;
+            }
+        }
+        fn jacobian(&self, _: &[f64], out: &mut DMatrix<f64>) {
+            out.fill(0.0);
+            for (i, x) in self.x.iter().enumerate() {
+                out[(i, 0)] = 1.0;
+                out[(i, 1)] = x * x;
+            }
+            if !self.idle {
+                assert_eq!(out.ncols(), 2);
+            }
+        }
+    }
+
+    fn parabola(idle: bool) -> Parabola {
+        Parabola {
+            x: vec![0.0, 1.0, 1.0, 0.0],
+            y: vec![1.0, 3.0, 5.0, 3.0],
+            idle,
+        }
+    }
+
+    #[test]
+    fn a_line_by_eye() -> Result<(), LeastSquaresError> {
+        // Two readings at x² = 0 (mean 2) and two at 1 (mean 4), each 1 off its mean: p = (2, 2), Σr² = 4, s² = 2, u(p₀) = √(2/2), u(p₁) = √(2/2 + 2/2).
+        let found = minimise(&parabola(false), &[0.0, 0.0], None, Patience::Short)?;
+        let u = found.standard_uncertainties();
+        for (got, want) in [
+            (found.parameters[0], 2.0),
+            (found.parameters[1], 2.0),
+            (found.sum_of_squares, 4.0),
+            (u[0], 1.0),
+            (u[1], 2.0_f64.sqrt()),
+        ] {
+            assert!((got - want).abs() < 1e-14, "got {got}, want {want}");
+        }
+        assert_eq!(found.ending, Ending::Orthogonal);
+        Ok(())
+    }
+
+    #[test]
+    fn exact_readings_end_by_the_step_that_would_change_nothing() -> Result<(), LeastSquaresError> {
+        let mut exact = parabola(false);
+        exact.y = exact.x.iter().map(|x| 0.1 + 0.3 * x * x).collect();
+        let found = minimise(&exact, &[1.0, 1.0], None, Patience::Short)?;
+        assert!(
+            (found.parameters[0] - 0.1).abs() < 1e-15 && (found.parameters[1] - 0.3).abs() < 1e-15
+        );
+        Ok(())
+    }
+
+    #[test]
+    fn an_idle_parameter_is_said_to_be_undetermined() {
+        let found = minimise(&parabola(true), &[0.0, 0.0, 1.0], None, Patience::Short)
+            .map(|found| found.parameters);
+        assert_eq!(found, Err(LeastSquaresError::Singular { n_parameters: 3 }));
+    }
+
+    #[test]
+    fn as_many_parameters_as_readings_leave_no_scatter() {
+        let mut short = parabola(false);
+        short.x.truncate(2);
+        let found =
+            minimise(&short, &[0.0, 0.0], None, Patience::Short).map(|found| found.parameters);
+        assert_eq!(
+            found,
+            Err(LeastSquaresError::TooFewResiduals {
+                n_residuals: 2,
+                n_parameters: 2
+            })
+        );
+    }
+
+    #[test]
+    fn a_start_that_is_not_finite_is_refused() {
+        let found = minimise(&parabola(false), &[f64::NAN, 0.0], None, Patience::Short)
+            .map(|found| found.parameters);
+        assert_eq!(found, Err(LeastSquaresError::NotFinite));
+    }
 }
