@@ -111,7 +111,7 @@ pub fn fit(records: &[PositionRecord]) -> Result<MotionFit, MotionError> {
     let spread = plain.spread()?;
     plain.is_a_motion(&spread)?;
     plain.is_long_and_dense_enough()?;
-    let laws = laws::trials(&plain.weighted(&spread))?;
+    let laws = laws::trials(&plain.weighted(&spread));
     Ok(assemble(records, &majority.belongs, &plain, &spread, laws))
 }
 

@@ -360,3 +360,53 @@ fn a_record_of_which_half_is_off_the_motion_is_refused() {
         "{found:?}"
     );
 }
+
+/// Dry friction by its turning points: straight loss of 4d a cycle, in each half cycle a cosine about the centre moved by d.
+fn dry_position_m(amplitude_m: f64, friction_m: f64, theta: f64) -> f64 {
+    let (mut turning_m, mut sign, mut left) = (amplitude_m, 1.0, theta);
+    while left > PI {
+        turning_m -= 2.0 * friction_m;
+        sign = -sign;
+        left -= PI;
+    }
+    sign * (friction_m + (turning_m - friction_m) * left.cos())
+}
+
+#[test]
+fn dry_friction_and_viscous_loss_are_told_apart() {
+    let omega = TAU / 1.2;
+    let noise = errors(900, 1e-4, 0.3, 21);
+    let dry: Vec<PositionRecord> =
+        record_of(|t_s| dry_position_m(0.1, 4e-4, omega * t_s), 30.0, 900)
+            .into_iter()
+            .zip(&noise)
+            .map(|(r, e)| PositionRecord {
+                x_m: r.x_m + e,
+                ..r
+            })
+            .collect();
+    let viscous = Truth::rail(0.004).record(30.0, &noise);
+    let excluded = |records: &[PositionRecord]| {
+        fit(records)
+            .expect("a motion")
+            .laws
+            .iter()
+            .map(|law| (law.law, law.excluded))
+            .collect::<Vec<_>>()
+    };
+    assert_eq!(
+        excluded(&dry),
+        [("none", true), ("viscous", true), ("dry", false)]
+    );
+    assert_eq!(
+        excluded(&viscous),
+        [("none", true), ("viscous", false), ("dry", true)]
+    );
+    let friction = fit(&dry).expect("a motion").laws[2].parameters[2];
+    let u = friction.2.expect("a free parameter");
+    assert!(
+        (friction.1 - 4e-4).abs() < 4.0 * u && u < 2e-6,
+        "d = {} ± {u}",
+        friction.1
+    );
+}

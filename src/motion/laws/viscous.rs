@@ -63,6 +63,7 @@ pub(super) fn fit(
         parameters,
         sum_of_squares: solution.sum_of_squares,
         n_free: solution.parameters.len(),
+        enlargement,
     })
 }
 
