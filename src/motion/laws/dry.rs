@@ -153,6 +153,7 @@ fn fit(weighted: &Weighted) -> Result<LawFit, LeastSquaresError> {
         .map(|u| u * enlargement.sqrt())
         .collect();
     let parameters = vec![
+        // A belongs to θ = 0, within half a cycle of the first reading.
         ("amplitude", p[0], Some(u[0]), "m"),
         ("phase", p[1], Some(u[1]), "rad"),
         ("friction_over_stiffness", p[2], Some(u[2]), "m"),
