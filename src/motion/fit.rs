@@ -84,6 +84,9 @@ impl MotionFit {
 /// the majority's scatter are marked [`PositionUse::Outlier`] and left out. The covariance is (JᵀJ)⁻¹ times the residual variance times the
 /// residual's spectrum near ω (near 0 for c) over that of independent errors.
 ///
+/// Intervals hold their 95 % for independent and for moderately correlated errors from three cycles on (tested by simulation). Not
+/// promised: below three cycles, errors that stay alike over a good part of a cycle look like motion, and intervals come out too short.
+///
 /// # Errors
 /// [`MotionError`], one variant a cause, each saying what to do.
 ///

@@ -6,7 +6,7 @@
 //! A, φ, γ and ω are sums over the residual that oscillate at ω, so of the residual's spectrum only its level near ω matters to them:
 //! slow drift does not, nor do harmonics of ω from an imperfect lens. c is the same at frequency 0.
 
-use crate::stats::normal_two_sided;
+use crate::stats::{coverage_factor, normal_two_sided};
 use nalgebra::DMatrix;
 use std::f64::consts::TAU;
 
@@ -17,6 +17,8 @@ const BAND_HALF_WIDTH_REL: f64 = 0.75;
 const BAND_HALF_WIDTH_BINS: f64 = 30.0;
 /// Or three half-widths γ of the motion's own line, where that is wider.
 const BAND_HALF_WIDTH_LINES: f64 = 3.0;
+/// For c the band ends here, in ω: the spectrum of slow errors falls steeply, and a wider mean would be too low.
+const SLOW_BAND_REL: f64 = 0.3;
 /// At least this many bins to each side, for records of few cycles.
 const MIN_HALF_WIDTH_BINS: f64 = 3.0;
 /// Lowest frequency that counts as oscillating, in 1/span: below it lies what the centre has taken out.
@@ -90,10 +92,13 @@ pub(super) fn enlargement(residue: &Residue, omega: f64, decay_rate: f64) -> Enl
     let n = residue.tau_s.len() as f64;
     let highest = 0.5 * n;
     let around = bins(cycles - half_width, cycles + half_width, highest);
-    let (level, ordinates) = spectrum_level(residue, TAU / span, &around);
+    // The two sides of ω count alike: of a spectrum that falls, the side below is higher, and in few cycles the fit has taken most of it.
+    let (lower, upper): (Vec<f64>, Vec<f64>) = around.iter().partition(|bin| **bin <= cycles);
+    let sides = [lower, upper].map(|side| spectrum_level(residue, TAU / span, &side));
+    let (level, ordinates) = joined(sides);
     let below = bins(
         1.0,
-        (BAND_HALF_WIDTH_REL * cycles).clamp(1.0, BAND_HALF_WIDTH_BINS),
+        (SLOW_BAND_REL * cycles).clamp(2.0, BAND_HALF_WIDTH_BINS),
         highest,
     );
     let (level_zero, ordinates_zero) = spectrum_level(residue, TAU / span, &below);
@@ -105,16 +110,34 @@ pub(super) fn enlargement(residue: &Residue, omega: f64, decay_rate: f64) -> Enl
         };
     }
     let near_omega = (level / residue.variance).max(1.0);
+    let degrees_of_freedom = residue.degrees_of_freedom.min(2.0 * ordinates);
+    // The level near 0 rests on fewer ordinates than the one whose degrees of freedom the fit states: the ratio of the coverage factors
+    // makes up for it. Slow errors are rarely weaker than those near ω, and few ordinates must not say so.
     let near_zero = if ordinates_zero < MIN_ORDINATES {
         near_omega
     } else {
-        (level_zero / residue.variance).max(1.0)
+        let factor = |nu| coverage_factor(0.95, nu);
+        let ratio =
+            factor(degrees_of_freedom.min(2.0 * ordinates_zero)) / factor(degrees_of_freedom);
+        (level_zero / residue.variance).max(near_omega) * ratio * ratio
     };
     Enlargement {
         near_omega,
         near_zero,
-        degrees_of_freedom: residue.degrees_of_freedom.min(2.0 * ordinates),
+        degrees_of_freedom,
     }
+}
+
+/// Mean of two levels and the ordinates it is worth: var = (L₁²/n₁ + L₂²/n₂)/4 for levels alike; a side without ordinates does not count.
+fn joined(sides: [(f64, f64); 2]) -> (f64, f64) {
+    let [(level_1, n_1), (level_2, n_2)] = sides;
+    if n_1 < 0.5 * MIN_ORDINATES {
+        return (level_2, n_2);
+    }
+    if n_2 < 0.5 * MIN_ORDINATES {
+        return (level_1, n_1);
+    }
+    (0.5 * (level_1 + level_2), 4.0 / (1.0 / n_1 + 1.0 / n_2))
 }
 
 /// Frequencies in units of 1/span: `from`, `from` + 1, … up to `to`, those between the lowest that counts and half the rate of readings.
