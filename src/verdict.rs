@@ -1,6 +1,6 @@
 //! Answers, with the figures behind each.
 
-use crate::motion::{MotionFit, MotionQuantities};
+use crate::motion::{MotionFit, MotionQuantities, period_shift_s};
 use crate::uncertainty::{Evaluation, prefixed, rounded, significant};
 
 /// One of three answers.
@@ -59,7 +59,8 @@ const LONGEST: f64 = 100.0;
 /// 3/2 power of the length at the same frame rate, as long as the motion lasts).
 ///
 /// `loss_shifts_period`: T_d − T_0 of the viscous law, with the 95 % interval that follows from the damping ratio's, against U(T) = 2u(T)
-/// of film and clock: yes where it lies above, no where it lies below, else undecided, with what would decide.
+/// of film and clock: yes where it lies above, no where it lies below, else undecided, with what would decide. Dry friction does not move the
+/// period: no, where the record follows it and rules viscous loss out.
 ///
 /// * `fit`, `quantities`: of the same record.
 /// * Returns the two, in this order.
@@ -149,7 +150,14 @@ fn loss_shifts_period(fit: &MotionFit, quantities: &MotionQuantities) -> Verdict
         prefixed(expanded_s, "s", 2),
     );
     let (from, to) = (prefixed(low, "s", 2), prefixed(high, "s", 2));
-    let (answer, sentence) = if low > expanded_s {
+    let (answer, sentence) = if loss_is_dry(fit) {
+        (
+            Answer::No,
+            format!(
+                "The record follows dry friction and rules viscous loss out; dry friction does not move the period (viscous loss of this size would by {shift}, against the {against} (k = 2) to which it is known)."
+            ),
+        )
+    } else if low > expanded_s {
         (
             Answer::Yes,
             format!(
@@ -182,10 +190,15 @@ fn loss_shifts_period(fit: &MotionFit, quantities: &MotionQuantities) -> Verdict
     }
 }
 
-/// T_d − T_0 = T_d (1 − √(1 − ζ²)), in the form that does not cancel.
-fn period_shift_s(period_s: f64, zeta: f64) -> f64 {
-    let x = zeta * zeta;
-    period_s * x / (1.0 + (1.0 - x).max(0.0).sqrt())
+/// True where the record rules viscous loss out and dry friction not.
+fn loss_is_dry(fit: &MotionFit) -> bool {
+    let excluded = |key| {
+        fit.laws
+            .iter()
+            .find(|law| law.law == key)
+            .map(|law| law.excluded)
+    };
+    excluded("viscous") == Some(true) && excluded("dry") == Some(false)
 }
 
 /// Would this record's estimates answer `loss_shifts_period` if the fit's uncertainties were `shrunk` times theirs? The clock's stays.
@@ -233,6 +246,7 @@ fn percent(part: f64) -> String {
 }
 
 #[cfg(test)]
+#[allow(clippy::expect_used, reason = "a failed expectation is a failed test")]
 mod tests {
     use super::*;
     use crate::motion::{ExternalTerms, PositionRecord, fit, quantities};
@@ -329,6 +343,44 @@ mod tests {
             (verdicts[1].ratio - 1.0).abs() < 0.01,
             "{}",
             verdicts[1].ratio
+        );
+    }
+
+    #[test]
+    fn dry_friction_loses_energy_and_does_not_shift_the_period() {
+        // θ = ωt in half cycle k: (−1)ᵏd + (A − (2k + 1)d) cos θ, see the law.
+        let (amplitude_m, d_m, omega) = (0.1, 4e-4, TAU / 1.2);
+        let at = |i: u32| {
+            let t_s = f64::from(i) / 60.0;
+            let k = (omega * t_s / std::f64::consts::PI).floor();
+            let side = if k % 2.0 == 0.0 { 1.0 } else { -1.0 };
+            let error = if (i * i * 7 + i * 3) % 11 < 5 {
+                5e-5
+            } else {
+                -5e-5
+            };
+            let x_m =
+                side * d_m + (amplitude_m - (2.0 * k + 1.0) * d_m) * (omega * t_s).cos() + error;
+            PositionRecord {
+                t_s,
+                u_t_s: 0.0,
+                x_m,
+                u_x_m: 1e-5,
+            }
+        };
+        let fit = fit(&(0..1800).map(at).collect::<Vec<_>>()).expect("a motion");
+        let external = ExternalTerms {
+            u_clock_rel: 1e-9,
+            clock_assumed: false,
+            u_scale_rel: None,
+            scale_assumed: false,
+        };
+        let verdicts = verdicts(&fit, &quantities(&fit, &external));
+        assert_eq!(answers(&verdicts), [Answer::Yes, Answer::No]);
+        assert!(
+            verdicts[1].sentence.contains("follows dry friction"),
+            "{}",
+            verdicts[1].sentence
         );
     }
 }

@@ -1,10 +1,4 @@
 //! Rehearsals as a caller sees them: a scene in, a clip and its truth out, checked with another program where one is at hand.
-//!
-//! `cargo test --release --test rehearsal -- --ignored renew` films `fixtures/demo` again; nothing else writes there.
-#![allow(
-    clippy::print_stdout,
-    reason = "a test that leaves something out says so, and accuracies are worth reading"
-)]
 use std::error::Error;
 use std::fs;
 use std::path::{Path, PathBuf};
@@ -848,14 +842,6 @@ mod films {
         for (t_s, x_m) in truth.t_s.iter().zip(&truth.x_m) {
             assert!((motion.position_m(*t_s) - x_m).abs() < 1e-11, "at {t_s} s");
         }
-        Ok(())
-    }
-
-    #[test]
-    #[ignore = "writes fixtures/demo; run it when the scene or the renderer has changed"]
-    fn renew_the_demo() -> Outcome {
-        let scene = Scene::from_toml(&fs::read_to_string(fixture("demo/rail-7.toml"))?)?;
-        rehearse(&scene, &fixture("demo/rail-7.mp4"))?;
         Ok(())
     }
 }

@@ -11,7 +11,7 @@ use std::path::PathBuf;
 /// The clip: Alder Row, rail 7, a rehearsal whose truth lies beside it in the repository.
 const CLIP: &[u8] = include_bytes!("../../fixtures/demo/rail-7.mp4");
 /// Marker, scale bar and mass, as a user would have marked them.
-const SHEET: &str = include_str!("../../fixtures/demo/rail-7.run.toml");
+const SHEET: &str = include_str!("../../fixtures/sheets/rail-7.toml");
 const CLIP_NAME: &str = "rail-7.mp4";
 
 /// What was typed after `demo`.

@@ -35,7 +35,7 @@ struct Arguments {
 #[derive(Debug, Subcommand)]
 enum Verb {
     /// Measure a clip: marker, scale bar, fit, verdicts, report
-    Measure(measure::Arguments),
+    Measure(Box<measure::Arguments>),
     /// Say what a clip is: stream, frame clock, still frames with a pixel grid
     Inspect(inspect::Arguments),
     /// The same fit and verdicts from a table of positions and times

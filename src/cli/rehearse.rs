@@ -20,8 +20,15 @@ pub(super) struct Arguments {
 
 /// Makes the film and its truth.
 pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
-    let place =
-        |error: RehearsalError| Failure::input(format!("{}: {error}", arguments.scene.display()));
+    let place = |error: RehearsalError| {
+        let sentence = format!("{}: {error}", arguments.scene.display());
+        match error {
+            RehearsalError::SceneText { .. }
+            | RehearsalError::SceneValue { .. }
+            | RehearsalError::ClipName { .. } => Failure::usage(sentence),
+            _ => Failure::input(sentence),
+        }
+    };
     let text = std::fs::read_to_string(&arguments.scene).map_err(|error| {
         Failure::input(format!(
             "{}: the scene cannot be read ({error}); check its name",

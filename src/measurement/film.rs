@@ -285,10 +285,6 @@ impl Film {
                 &self.orientation,
             ),
             streak: self.streak(rows),
-            n_lost: rows
-                .iter()
-                .filter(|row| row.status == RowStatus::Lost)
-                .count(),
             n_unsteady: self.n_unsteady,
             capture_rate: self.capture_rate,
             frame_clock: self.clock,

@@ -119,8 +119,6 @@ pub struct FilmPart {
     pub still: Still,
     /// The streak picture's lines.
     pub streak: Streak,
-    /// Frames in which the marker was not found.
-    pub n_lost: usize,
     /// Frames left out because the steady patch was lost in them.
     pub n_unsteady: usize,
     /// Where the rate of capture was taken from.

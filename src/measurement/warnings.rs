@@ -75,7 +75,6 @@ fn film_warnings(
     warn: &mut dyn FnMut(&'static str, bool, String),
 ) {
     let clip = &film.clip;
-    let clock = &film.frame_clock;
     warn(
         "clip_damaged",
         clip.n_damaged > 0,
@@ -98,7 +97,7 @@ fn film_warnings(
             clip.n_frames
         ),
     );
-    let n_lost = film.n_lost;
+    let n_lost = count(measurement, RowStatus::Lost);
     warn(
         "frames_lost",
         n_lost > 0,
@@ -123,6 +122,38 @@ fn film_warnings(
             clip.n_interlaced
         ),
     );
+    time_warnings(film, warn);
+    let scale = &film.scale;
+    warn(
+        "off_axis_motion",
+        scale.off_axis_rms_m > OFF_AXIS_SHARE * measurement.fit.amplitude_m,
+        format!(
+            "The marker strays {:.2} mm rms from a straight axis; steady the camera (--steady) or check the rail.",
+            scale.off_axis_rms_m * 1e3
+        ),
+    );
+    warn(
+        "bar_off_axis",
+        scale.bar_angle_rad > BAR_ANGLE_RAD,
+        format!(
+            "The scale bar stands {:.1}° off the motion; lay it along the rail, in the marker's plane.",
+            scale.bar_angle_rad.to_degrees()
+        ),
+    );
+    warn(
+        "scale_assumed",
+        scale.assumed,
+        format!(
+            "The scale rests on assumed figures: the bar's length to {:.2} mm and its ends to {:.2} px (standard uncertainties); give --length-u and --end-u.",
+            scale.u_length_m * 1e3,
+            scale.u_end_px
+        ),
+    );
+}
+
+/// What the stamps and the rate of capture leave to be said.
+fn time_warnings(film: &FilmPart, warn: &mut dyn FnMut(&'static str, bool, String)) {
+    let clock = &film.frame_clock;
     if let CaptureRate::FromMetadata(rate_hz, key) = &film.capture_rate {
         warn(
             "slow_motion",
@@ -156,32 +187,6 @@ fn film_warnings(
         format!(
             "{} frames carry a stamp that does not lie after the one before; they were left out.",
             clock.n_repeated
-        ),
-    );
-    let scale = &film.scale;
-    warn(
-        "off_axis_motion",
-        scale.off_axis_rms_m > OFF_AXIS_SHARE * measurement.fit.amplitude_m,
-        format!(
-            "The marker strays {:.2} mm rms from a straight axis; steady the camera (--steady) or check the rail.",
-            scale.off_axis_rms_m * 1e3
-        ),
-    );
-    warn(
-        "bar_off_axis",
-        scale.bar_angle_rad > BAR_ANGLE_RAD,
-        format!(
-            "The scale bar stands {:.1}° off the motion; lay it along the rail, in the marker's plane.",
-            scale.bar_angle_rad.to_degrees()
-        ),
-    );
-    warn(
-        "scale_assumed",
-        scale.assumed,
-        format!(
-            "The scale rests on assumed figures: the bar's length to {:.2} mm and its ends to {:.2} px (standard uncertainties); give --length-u and --end-u.",
-            scale.u_length_m * 1e3,
-            scale.u_end_px
         ),
     );
 }

@@ -4,9 +4,9 @@
 //! readings are outliers, and (by ω, γ, c) the shape over a quarter of a cycle. A period that changes with amplitude, or a jump, therefore shows
 //! here while the fit averages over it.
 
-use super::laws::{Sinusoid, SinusoidProblem};
 use super::least_squares::refine;
 use super::readings::Readings;
+use super::sinusoid::{Sinusoid, SinusoidProblem};
 use super::{MotionFit, PositionRecord, PositionUse};
 use nalgebra::{DMatrix, DVector, Matrix2, Vector2};
 use std::f64::consts::{FRAC_PI_2, TAU};
@@ -279,7 +279,7 @@ impl Local<'_> {
         };
         let start = problem.free_parameters(
             sinusoid(self.fit)
-                .from_later(t_ref_s - self.fit.t_ref_s)
+                .counted_from(t_ref_s - self.fit.t_ref_s)
                 .parameters(),
         );
         let solution = refine(&problem, &start).ok()?;
@@ -290,6 +290,7 @@ impl Local<'_> {
 }
 
 #[cfg(test)]
+#[allow(clippy::expect_used, reason = "a failed expectation is a failed test")]
 mod tests {
     use super::*;
     use crate::motion::fit;

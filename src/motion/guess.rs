@@ -7,8 +7,8 @@
 //! A plain periodogram would do for many cycles; with one and a half its peak is pulled by the unknown centre, and a trend taken off
 //! beforehand would take half the motion with it. Cells without a reading weigh nothing, so gaps need no filling.
 
-use super::laws::Sinusoid;
 use super::readings::{Readings, median};
+use super::sinusoid::Sinusoid;
 use nalgebra::{Matrix3, Vector3};
 use rustfft::{FftPlanner, num_complex::Complex64};
 
@@ -265,6 +265,7 @@ impl Sums {
 }
 
 #[cfg(test)]
+#[allow(clippy::expect_used, reason = "a failed expectation is a failed test")]
 mod tests {
     use super::*;
     use crate::motion::PositionRecord;

@@ -6,7 +6,7 @@
 //! A, φ, γ and ω are sums over the residual that oscillate at ω, so of the residual's spectrum only its level near ω matters to them:
 //! slow drift does not, nor do harmonics of ω from an imperfect lens. c is the same at frequency 0.
 
-use crate::stats::normal_two_sided;
+use crate::stats::{coverage_factor, normal_two_sided};
 use nalgebra::DMatrix;
 use std::f64::consts::TAU;
 
@@ -17,6 +17,8 @@ const BAND_HALF_WIDTH_REL: f64 = 0.75;
 const BAND_HALF_WIDTH_BINS: f64 = 30.0;
 /// Or three half-widths γ of the motion's own line, where that is wider.
 const BAND_HALF_WIDTH_LINES: f64 = 3.0;
+/// For c the band ends here, in ω: the spectrum of slow errors falls steeply, and a wider mean would be too low.
+const SLOW_BAND_REL: f64 = 0.3;
 /// At least this many bins to each side, for records of few cycles.
 const MIN_HALF_WIDTH_BINS: f64 = 3.0;
 /// Lowest frequency that counts as oscillating, in 1/span: below it lies what the centre has taken out.
@@ -90,12 +92,13 @@ pub(super) fn enlargement(residue: &Residue, omega: f64, decay_rate: f64) -> Enl
     let n = residue.tau_s.len() as f64;
     let highest = 0.5 * n;
     let around = bins(cycles - half_width, cycles + half_width, highest);
-    let (level, ordinates) = spectrum_level(residue, TAU / span, &around);
+    // The two sides of ω count alike: of a spectrum that falls, the side below is higher, and in few cycles the fit has taken most of it.
+    let (lower, upper): (Vec<f64>, Vec<f64>) = around.iter().partition(|bin| **bin <= cycles);
+    let sides = [lower, upper].map(|side| spectrum_level(residue, TAU / span, &side));
+    let (level, ordinates) = joined(sides);
     let below = bins(
         1.0,
-        (BAND_HALF_WIDTH_REL * cycles)
-            .min(BAND_HALF_WIDTH_BINS)
-            .max(1.0),
+        (SLOW_BAND_REL * cycles).clamp(2.0, BAND_HALF_WIDTH_BINS),
         highest,
     );
     let (level_zero, ordinates_zero) = spectrum_level(residue, TAU / span, &below);
@@ -107,16 +110,34 @@ pub(super) fn enlargement(residue: &Residue, omega: f64, decay_rate: f64) -> Enl
         };
     }
     let near_omega = (level / residue.variance).max(1.0);
+    let degrees_of_freedom = residue.degrees_of_freedom.min(2.0 * ordinates);
+    // The level near 0 rests on fewer ordinates than the one whose degrees of freedom the fit states: the ratio of the coverage factors
+    // makes up for it. Slow errors are rarely weaker than those near ω, and few ordinates must not say so.
     let near_zero = if ordinates_zero < MIN_ORDINATES {
         near_omega
     } else {
-        (level_zero / residue.variance).max(1.0)
+        let factor = |nu| coverage_factor(0.95, nu);
+        let ratio =
+            factor(degrees_of_freedom.min(2.0 * ordinates_zero)) / factor(degrees_of_freedom);
+        (level_zero / residue.variance).max(near_omega) * ratio * ratio
     };
     Enlargement {
         near_omega,
         near_zero,
-        degrees_of_freedom: residue.degrees_of_freedom.min(2.0 * ordinates),
+        degrees_of_freedom,
     }
+}
+
+/// Mean of two levels and the ordinates it is worth: var = (L₁²/n₁ + L₂²/n₂)/4 for levels alike; a side without ordinates does not count.
+fn joined(sides: [(f64, f64); 2]) -> (f64, f64) {
+    let [(level_1, n_1), (level_2, n_2)] = sides;
+    if n_1 < 0.5 * MIN_ORDINATES {
+        return (level_2, n_2);
+    }
+    if n_2 < 0.5 * MIN_ORDINATES {
+        return (level_1, n_1);
+    }
+    (0.5 * (level_1 + level_2), 4.0 / (1.0 / n_1 + 1.0 / n_2))
 }
 
 /// Frequencies in units of 1/span: `from`, `from` + 1, … up to `to`, those between the lowest that counts and half the rate of readings.
@@ -246,5 +267,66 @@ mod tests {
         // + + − + − − + −: 4 above, 4 below, 6 runs; expected 5, variance 4·3/7.
         let (z, _) = runs_test(&[1.0, 1.0, -1.0, 1.0, -1.0, -1.0, 1.0, -1.0], 0.0);
         assert!((z - 1.0 / (12.0_f64 / 7.0).sqrt()).abs() < 1e-14, "z = {z}");
+    }
+
+    /// The basis of a fit that takes out a constant, a cosine and a sine at bin `bin` of n readings: orthonormal as it stands.
+    fn basis(n: usize, bin: f64) -> DMatrix<f64> {
+        let norm = (2.0 / n as f64).sqrt();
+        let angle = |i: usize| TAU * bin * i as f64 / n as f64;
+        DMatrix::from_fn(n, 3, |i, j| match j {
+            0 => norm / 2.0_f64.sqrt(),
+            1 => norm * angle(i).cos(),
+            _ => norm * angle(i).sin(),
+        })
+    }
+
+    /// Mean level near ω of the residuals of 400 records of 256 readings, bin 10, whose neighbours correlate by `lag1`, over their variance.
+    fn mean_level(lag1: f64) -> f64 {
+        use rand::SeedableRng;
+        use rand_distr::{Distribution, StandardNormal};
+        let (n, bin, records) = (256, 10.0, 400);
+        let (basis, tau_s) = (basis(n, bin), (0..n).map(|i| i as f64).collect::<Vec<_>>());
+        let mut rng = rand_chacha::ChaCha8Rng::seed_from_u64(5);
+        let bins: Vec<f64> = (3..18).map(f64::from).collect();
+        let mut sum = 0.0;
+        for _ in 0..records {
+            let mut last: f64 = StandardNormal.sample(&mut rng);
+            let noise = nalgebra::DVector::from_fn(n, |_, _| {
+                let fresh: f64 = StandardNormal.sample(&mut rng);
+                last = lag1 * last + (1.0 - lag1 * lag1).sqrt() * fresh;
+                last
+            });
+            let left = &noise - &basis * (basis.transpose() * &noise);
+            let degrees_of_freedom = (n - 3) as f64;
+            let variance = left.norm_squared() / degrees_of_freedom;
+            let residue = Residue {
+                tau_s: &tau_s,
+                normalised: left.as_slice(),
+                basis: &basis,
+                variance,
+                degrees_of_freedom,
+            };
+            sum += spectrum_level(&residue, TAU / n as f64, &bins).0 / variance;
+        }
+        sum / f64::from(records)
+    }
+
+    #[test]
+    fn the_spectrum_of_independent_errors_is_one_although_the_fit_has_taken_part_of_it() {
+        // 14 ordinates of 2 degrees of freedom and 400 records: the mean is known to 1/√(14·400) = 1.3 %; four times that is allowed.
+        let level = mean_level(0.0);
+        assert!((level - 1.0).abs() < 0.054, "{level}");
+    }
+
+    #[test]
+    fn the_spectrum_of_correlated_errors_is_the_one_of_theory() {
+        // (1 − a²)/(1 − 2a cos ω + a²), mean over the bins 3…17 without 10, ω = 2π·bin/256, a = 0.6.
+        let a: f64 = 0.6;
+        let theory = |bin: i32| {
+            (1.0 - a * a) / (1.0 - 2.0 * a * (TAU * f64::from(bin) / 256.0).cos() + a * a)
+        };
+        let want = (3..18).filter(|bin| *bin != 10).map(theory).sum::<f64>() / 14.0;
+        let level = mean_level(a);
+        assert!((level / want - 1.0).abs() < 0.06, "{level} against {want}");
     }
 }

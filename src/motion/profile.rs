@@ -3,9 +3,9 @@
 //! In: the weighted readings and their least-squares sinusoid. Out: the two γ at which the smallest sum of squares over all other
 //! parameters has grown by t²·s²·(enlargement): the ends of the interval, unequal where the sum is no parabola in γ.
 
-use super::laws::{Sinusoid, SinusoidProblem};
-use super::least_squares::{minimise, refine};
+use super::least_squares::{Patience, minimise, refine};
 use super::readings::Readings;
+use super::sinusoid::{Sinusoid, SinusoidProblem};
 
 /// An end is found when the distance is right to this part of the limit: a ten-thousandth of the interval's width.
 const DISTANCE_TOL_REL: f64 = 1e-4;
@@ -80,7 +80,7 @@ impl Profile<'_> {
             problem.free_parameters(std::array::from_fn(|i| from[i] + shift * self.slope[i]));
         let scale = problem.free_parameters(self.best.scale(self.readings.span_s()));
         let solution = refine(&problem, &free)
-            .or_else(|_| minimise(&problem, &free, Some(&scale)))
+            .or_else(|_| minimise(&problem, &free, Some(&scale), Patience::Short))
             .ok()?;
         let growth = solution.sum_of_squares - self.sum_of_squares;
         let distance = (growth.max(0.0) / self.variance)
@@ -92,5 +92,53 @@ impl Profile<'_> {
                 Sinusoid::from_parameters(problem.all_parameters(&solution.parameters)),
             )
         })
+    }
+}
+
+#[cfg(test)]
+#[allow(clippy::expect_used, reason = "a failed expectation is a failed test")]
+mod tests {
+    use crate::motion::{PositionRecord, fit};
+    use crate::stats::coverage_factor;
+    use std::f64::consts::TAU;
+
+    fn record(gamma: f64, n: u32, error_m: f64) -> Vec<PositionRecord> {
+        let at = |i: u32| {
+            let t_s = f64::from(i) / 20.0;
+            let error = if (i * i * 7 + i * 3) % 11 < 5 {
+                error_m
+            } else {
+                -error_m
+            };
+            let x_m = 0.1 * (-gamma * t_s).exp() * (TAU / 1.2 * t_s).cos() + error;
+            PositionRecord {
+                t_s,
+                u_t_s: 0.0,
+                x_m,
+                u_x_m: 1e-3,
+            }
+        };
+        (0..n).map(at).collect()
+    }
+
+    #[test]
+    fn a_well_known_decay_rate_has_the_quadratic_interval() {
+        let fit = fit(&record(0.02, 600, 1e-5)).expect("a motion");
+        let half = coverage_factor(0.95, fit.degrees_of_freedom) * fit.covariance[2][2].sqrt();
+        for (end, sign) in fit.decay_rate_interval95_per_s.into_iter().zip([-1.0, 1.0]) {
+            assert!(
+                ((end - fit.decay_rate_per_s) * sign / half - 1.0).abs() < 1e-3,
+                "{end}"
+            );
+        }
+    }
+
+    #[test]
+    fn a_badly_known_strong_decay_reaches_further_up_than_down() {
+        // Of a motion that is gone after a cycle a faster decay can hardly be told from a still faster one.
+        let fit = fit(&record(0.8, 80, 8e-3)).expect("a motion");
+        let [low, high] = fit.decay_rate_interval95_per_s;
+        let (down, up) = (fit.decay_rate_per_s - low, high - fit.decay_rate_per_s);
+        assert!(up > 1.1 * down && low > 0.0, "down {down}, up {up}");
     }
 }

@@ -6,9 +6,9 @@
 //! the energy loss do not notice. A wrong scale stretches amplitude and centre only.
 
 use super::MotionFit;
+use super::relations::Figures;
 use crate::stats::coverage_factor;
 use crate::uncertainty::{BudgetRow, Evaluation, Quantity, combined, effective_degrees_of_freedom};
-use std::f64::consts::{LN_2, TAU};
 
 /// Coverage of every interval.
 const COVERAGE: f64 = 0.95;
@@ -129,7 +129,7 @@ pub fn quantities(fit: &MotionFit, external: &ExternalTerms) -> MotionQuantities
             "half_life",
             "s",
             Figures::half_life,
-            [-LN_2 / figures.gamma.powi(2), 0.0],
+            figures.half_life_slope(),
             1.0,
         ),
         centre: ledger.length("centre", fit.centre_m, 4),
@@ -137,76 +137,11 @@ pub fn quantities(fit: &MotionFit, external: &ExternalTerms) -> MotionQuantities
     }
 }
 
-/// γ and ω, and what follows from them exactly; a slope is (∂/∂γ, ∂/∂ω).
-#[derive(Clone, Copy, Debug)]
-pub(super) struct Figures {
-    /// γ, s⁻¹.
-    pub(super) gamma: f64,
-    /// ω, rad/s.
-    pub(super) omega: f64,
-}
-
-impl Figures {
-    /// ω_0 = √(ω² + γ²), rad/s.
-    fn undamped(&self) -> f64 {
-        self.omega.hypot(self.gamma)
-    }
-    pub(super) fn period(&self) -> f64 {
-        TAU / self.omega
-    }
-    fn period_slope(&self) -> [f64; 2] {
-        [0.0, -TAU / self.omega.powi(2)]
-    }
-    pub(super) fn undamped_period(&self) -> f64 {
-        TAU / self.undamped()
-    }
-    fn undamped_period_slope(&self) -> [f64; 2] {
-        let cubed = self.undamped().powi(3);
-        [-TAU * self.gamma / cubed, -TAU * self.omega / cubed]
-    }
-    pub(super) fn damping_ratio(&self) -> f64 {
-        self.gamma / self.undamped()
-    }
-    fn damping_ratio_slope(&self) -> [f64; 2] {
-        let cubed = self.undamped().powi(3);
-        [self.omega.powi(2) / cubed, -self.gamma * self.omega / cubed]
-    }
-    pub(super) fn log_decrement(&self) -> f64 {
-        TAU * self.gamma / self.omega
-    }
-    fn log_decrement_slope(&self) -> [f64; 2] {
-        [TAU / self.omega, -TAU * self.gamma / self.omega.powi(2)]
-    }
-    pub(super) fn quality_factor(&self) -> f64 {
-        0.5 / self.damping_ratio()
-    }
-    fn quality_factor_slope(&self) -> [f64; 2] {
-        self.damping_ratio_slope()
-            .map(|slope| -0.5 * slope / self.damping_ratio().powi(2))
-    }
-    /// By `exp_m1`: 1 − e^(−2δ) itself loses the digits that a small loss has.
-    pub(super) fn energy_loss(&self) -> f64 {
-        -(-2.0 * self.log_decrement()).exp_m1()
-    }
-    fn energy_loss_slope(&self) -> [f64; 2] {
-        self.log_decrement_slope()
-            .map(|slope| 2.0 * slope * (-2.0 * self.log_decrement()).exp())
-    }
-    pub(super) fn half_life(&self) -> f64 {
-        LN_2 / self.gamma
-    }
-    /// T_d − T_0 = T_d·x/(1 + √(1 − x)) with x = ζ², without the cancellation of the plain difference.
-    pub(super) fn period_shift(&self) -> f64 {
-        let x = self.damping_ratio().powi(2);
-        self.period() * x / (1.0 + (1.0 - x).sqrt())
-    }
-}
-
 /// The upper end of a one-sided 95 % interval of γ where the two-sided one contains 0, s⁻¹.
 ///
 /// The profile's upper half-width, from t(0.975) to t(0.95). An estimate below 0 counts as 0: a fluctuation must not buy a bound that the
 /// record's noise does not support. That costs over-coverage, by up to 5 %, where the loss is truly 0.
-pub(super) fn one_sided_decay_rate_bound(fit: &MotionFit) -> f64 {
+fn one_sided_decay_rate_bound(fit: &MotionFit) -> f64 {
     let half = fit.decay_rate_interval95_per_s[1] - fit.decay_rate_per_s;
     let nu = fit.degrees_of_freedom;
     fit.decay_rate_per_s.max(0.0)
@@ -214,7 +149,7 @@ pub(super) fn one_sided_decay_rate_bound(fit: &MotionFit) -> f64 {
 }
 
 /// True where the 95 % interval of γ contains 0.
-pub(super) fn loss_may_be_zero(fit: &MotionFit) -> bool {
+fn loss_may_be_zero(fit: &MotionFit) -> bool {
     let [low, high] = fit.decay_rate_interval95_per_s;
     low <= 0.0 && high >= 0.0
 }

@@ -5,9 +5,9 @@
 
 use super::MotionError;
 use super::guess::Guess;
-use super::laws::{Sinusoid, SinusoidProblem};
-use super::least_squares::{LeastSquaresError, minimise, refine};
+use super::least_squares::{LeastSquaresError, advance, refine};
 use super::readings::{Readings, median};
+use super::sinusoid::{Sinusoid, SinusoidProblem};
 use crate::stats::{normal_quantile, student_t_quantile};
 
 /// Tukey's constant: 95 % efficiency for Gaussian noise.
@@ -24,6 +24,8 @@ const MAD_EFFICIENCY: f64 = 0.37;
 const ROUNDING_REL: f64 = 1e-11;
 /// A residual beyond this many scales counts the same as one at it when two robust fits are compared.
 const TRUNCATION: f64 = 3.0;
+/// Stated uncertainties that differ by more than this factor get a first round with equal weights.
+const MIXED_WEIGHTS: f64 = 4.0;
 
 /// The motion that most readings agree on.
 #[derive(Clone, Debug)]
@@ -39,19 +41,15 @@ pub(super) struct Majority {
 /// through, times the robust scale: 4.9 scales for 10⁴ readings, more for few, whose scale is known less well.
 ///
 /// # Errors
-/// The least-squares error of the last start where none could be fitted; too many outliers where more than a third would be marked.
+/// Not fitted where there is no start; too many outliers where more than a third would be marked.
 ///
 /// # Source
 /// [Huber 1981](crate::sources::Huber81).
 pub(super) fn majority(readings: &Readings, starts: &[Guess]) -> Result<Majority, MotionError> {
-    let mut fits = Vec::new();
-    let mut failure = LeastSquaresError::NotFinite;
-    for start in starts {
-        match reweighted(readings, start.sinusoid) {
-            Ok(fit) => fits.push(fit),
-            Err(error) => failure = error,
-        }
-    }
+    let fits: Vec<Reweighted> = starts
+        .iter()
+        .map(|start| reweighted(readings, start.sinusoid))
+        .collect();
     let smallest = fits
         .iter()
         .map(|fit| fit.scale)
@@ -65,7 +63,7 @@ pub(super) fn majority(readings: &Readings, starts: &[Guess]) -> Result<Majority
     let best = fits
         .into_iter()
         .min_by(|a, b| cost(a).total_cmp(&cost(b)))
-        .ok_or(failure)?;
+        .ok_or(LeastSquaresError::NotFinite)?;
     let n = readings.len() as f64;
     let degrees_of_freedom = n - best.sinusoid.parameters().len() as f64;
     let scale = best.scale * (n / degrees_of_freedom).sqrt();
@@ -96,14 +94,35 @@ struct Reweighted {
     normalised: Vec<f64>,
 }
 
-fn reweighted(readings: &Readings, start: Sinusoid) -> Result<Reweighted, LeastSquaresError> {
-    let mut state = judge(readings, start);
-    let floor = rounding_floor(readings);
+fn reweighted(readings: &Readings, start: Sinusoid) -> Reweighted {
+    let sigma = start.sigma_m(readings);
+    let (least, most) = sigma
+        .iter()
+        .fold((f64::INFINITY, 0.0_f64), |(least, most), s| {
+            (least.min(*s), most.max(*s))
+        });
+    let mut sinusoid = start;
+    if most > MIXED_WEIGHTS * least {
+        // From the guess even the best readings lie many of their σ off, and the majority by stated weights would be the poor ones.
+        sinusoid = settle(readings, sinusoid, |_| vec![most; readings.len()]).sinusoid;
+    }
+    let mut state = settle(readings, sinusoid, |sinusoid| sinusoid.sigma_m(readings));
+    state.scale = state.scale.max(rounding_floor(readings));
+    state
+}
+
+/// Reweights until the scale settles, with σ by `sigma_of` the current motion.
+fn settle(
+    readings: &Readings,
+    start: Sinusoid,
+    sigma_of: impl Fn(&Sinusoid) -> Vec<f64>,
+) -> Reweighted {
+    let mut state = judge(readings, start, &sigma_of(&start));
     for _ in 0..MAX_STEPS {
-        if state.scale <= floor {
+        if state.scale <= rounding_floor(readings) {
             break;
         }
-        let sigma = state.sinusoid.sigma_m(readings);
+        let sigma = sigma_of(&state.sinusoid);
         let weights: Vec<f64> = state
             .normalised
             .iter()
@@ -116,34 +135,28 @@ fn reweighted(readings: &Readings, start: Sinusoid) -> Result<Reweighted, LeastS
             held_decay_rate_per_s: None,
         };
         let from = state.sinusoid.parameters();
-        let solution = refine(&problem, &from).or_else(|_| {
-            minimise(
-                &problem,
-                &from,
-                Some(&state.sinusoid.scale(readings.span_s())),
-            )
-        })?;
-        let next = judge(
-            readings,
-            Sinusoid::from_parameters(problem.all_parameters(&solution.parameters)),
+        let scale = state.sinusoid.scale(readings.span_s());
+        let stopped = refine(&problem, &from).map_or_else(
+            |_| advance(&problem, &from, &scale),
+            |solution| solution.parameters,
         );
+        let found = Sinusoid::from_parameters(problem.all_parameters(&stopped));
+        let next = judge(readings, found, &sigma_of(&found));
         let settled = (next.scale / state.scale - 1.0).abs() < SCALE_SETTLED_REL;
         state = next;
         if settled {
             break;
         }
     }
-    state.scale = state.scale.max(floor);
-    Ok(state)
+    state
 }
 
-fn judge(readings: &Readings, sinusoid: Sinusoid) -> Reweighted {
-    let sigma = sinusoid.sigma_m(readings);
+fn judge(readings: &Readings, sinusoid: Sinusoid, sigma_m: &[f64]) -> Reweighted {
     let normalised: Vec<f64> = readings
         .tau_s
         .iter()
         .zip(&readings.x_m)
-        .zip(&sigma)
+        .zip(sigma_m)
         .map(|((tau, x), s)| (x - sinusoid.position_m(*tau)) / s)
         .collect();
     let scale = median(normalised.iter().map(|z| z.abs()).collect()) / normal_quantile(0.75);

@@ -173,20 +173,34 @@ pub(super) fn check_time(scene: &Scene) -> Result<(), RehearsalError> {
         camera.duration_s,
         "the film would hold more than 5000 periods: make it shorter",
     )?;
-    within(
-        "camera.exposure_s",
-        camera.exposure_s,
-        0.0,
-        1.0 / taken_hz,
-        "give seconds from 0 to one frame interval",
-    )?;
-    within(
-        "camera.readout_s",
-        camera.readout_s,
-        0.0,
-        1.0 / taken_hz,
-        "give seconds from 0 to one frame interval",
-    )?;
+    check_shutter(scene, taken_hz)?;
+    let ticks = scene
+        .stamps
+        .ticks_per_s
+        .unwrap_or(shutter::FINE_TICKS_PER_S);
+    require(
+        (1..=10_000_000).contains(&ticks) && f64::from(ticks) >= rate_hz,
+        "stamps.ticks_per_s",
+        ticks,
+        "give a whole number from camera.rate_hz to 10000000",
+    )
+}
+
+/// Exposure, readout and jitter against the time a picture has.
+fn check_shutter(scene: &Scene, taken_hz: f64) -> Result<(), RehearsalError> {
+    let camera = &scene.camera;
+    for (key, seconds) in [
+        ("camera.exposure_s", camera.exposure_s),
+        ("camera.readout_s", camera.readout_s),
+    ] {
+        within(
+            key,
+            seconds,
+            0.0,
+            1.0 / taken_hz,
+            "give seconds from 0 to one frame interval",
+        )?;
+    }
     // The smear is sampled every quarter pixel, for every pixel of the body: this bounds the work.
     let smear_px = scene.motion.amplitude_m * std::f64::consts::TAU / scene.motion.period_s
         * camera.exposure_s
@@ -203,16 +217,6 @@ pub(super) fn check_time(scene: &Scene) -> Result<(), RehearsalError> {
         0.0,
         0.2 / taken_hz,
         "give seconds from 0 to a fifth of the frame interval",
-    )?;
-    let ticks = scene
-        .stamps
-        .ticks_per_s
-        .unwrap_or(shutter::FINE_TICKS_PER_S);
-    require(
-        (1..=10_000_000).contains(&ticks) && f64::from(ticks) >= rate_hz,
-        "stamps.ticks_per_s",
-        ticks,
-        "give a whole number from camera.rate_hz to 10000000",
     )
 }
 

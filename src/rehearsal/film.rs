@@ -1,5 +1,6 @@
 //! The rehearsal itself: threads take the pictures, one encoder writes them in order, and clip and truth appear together.
-use std::fs;
+use std::fs::{self, File};
+use std::io::Write as _;
 use std::path::{Path, PathBuf};
 use std::sync::mpsc::{Receiver, SyncSender, sync_channel};
 use std::thread;
@@ -66,7 +67,9 @@ pub fn rehearse(scene: &Scene, clip_path: &Path) -> Result<Truth, RehearsalError
         source,
     })?;
     let made_truth = making.path().join("truth.json");
-    fs::write(&made_truth, json).map_err(io("write", &truth_path))?;
+    File::create(&made_truth)
+        .and_then(|mut file| file.write_all(json.as_bytes()))
+        .map_err(io("write", &truth_path))?;
     fs::rename(&made_clip, clip_path).map_err(io("put in place", clip_path))?;
     fs::rename(&made_truth, &truth_path).map_err(io("put in place", &truth_path))?;
     Ok(truth)

@@ -135,6 +135,27 @@ pub struct PixelBox {
     pub h: i64,
 }
 
+impl BarTruth {
+    /// The bar as the camera sees it, at rest and in the first picture; None where there is none in the scene.
+    fn new(length_m: f64, camera: &Camera, first: Option<&Exposure>) -> Option<Self> {
+        let ends_px = camera.bar_ends_px()?;
+        let shake_px = first.map_or([0.0; 2], |first| camera.shake_px(first.t_s));
+        let moved = |by: [f64; 2]| {
+            ends_px.map(|[x, y]| {
+                [
+                    rounded(x + by[0], STEPS_PER_PX),
+                    rounded(y + by[1], STEPS_PER_PX),
+                ]
+            })
+        };
+        Some(Self {
+            length_m,
+            ends_px: moved([0.0; 2]),
+            ends_first_picture_px: moved(shake_px),
+        })
+    }
+}
+
 impl Truth {
     /// The truth about the pictures that a camera took.
     pub(super) fn new(
@@ -174,17 +195,6 @@ impl Truth {
             reason = "an hour in ticks is far below 2⁵³"
         )]
         let stamp_s = |ticks: i64| rounded(ticks as f64 / f64::from(ticks_per_s), STEPS_PER_S);
-        let shake_px = |ends: [[f64; 2]; 2]| {
-            let by = exposures
-                .first()
-                .map_or([0.0; 2], |first| camera.shake_px(first.t_s));
-            ends.map(|[x, y]| {
-                [
-                    rounded(x + by[0], STEPS_PER_PX),
-                    rounded(y + by[1], STEPS_PER_PX),
-                ]
-            })
-        };
         Self {
             file,
             scene: scene.name.clone(),
@@ -199,15 +209,9 @@ impl Truth {
             px_per_m: scene.camera.px_per_m,
             axis_angle_deg: scene.camera.axis_angle_deg,
             law: LawTruth::new(scene, camera),
-            scale_bar: scene.scale_bar.and_then(|bar| {
-                let ends = camera.bar_ends_px()?;
-                let ends_px = ends.map(|end| end.map(|at| rounded(at, STEPS_PER_PX)));
-                Some(BarTruth {
-                    length_m: bar.length_m,
-                    ends_px,
-                    ends_first_picture_px: shake_px(ends),
-                })
-            }),
+            scale_bar: scene
+                .scale_bar
+                .and_then(|bar| BarTruth::new(bar.length_m, camera, exposures.first())),
             marker_box_px: box_px(0),
             first_visible: visible
                 .iter()

@@ -321,19 +321,20 @@ mod tests {
     /// The bound for a single edge, worked out by hand: a step of contrast C, low-passed by σ, has Σ g_x² = C²/(2√π σ) a row.
     #[test]
     fn the_bound_for_a_straight_edge_is_that_of_the_textbook() {
-        let (width, height) = (61_usize, 41_usize);
+        let (width, height) = (121_usize, 41_usize);
         let contrast = 1600.0;
         let edge = |at: f64| 0.5 * (1.0 + erf(at / (LOWPASS_SIGMA_PX * std::f64::consts::SQRT_2)));
         let luma: Vec<i16> = (0..width * height)
             .map(|at| {
-                let (x, y) = ((at % width) as f64 - 30.0, (at / width) as f64 - 20.0);
+                let (x, y) = ((at % width) as f64 - 60.0, (at / width) as f64 - 20.0);
                 round(1000.0 + contrast * edge(x) + 0.5 * contrast * edge(y))
             })
             .collect();
         let template = Template::from_lowpassed(luma, width, height).unwrap();
         let sigma = LOWPASS_SIGMA_PX;
         let root_pi = std::f64::consts::PI.sqrt();
-        let rows = height as f64 - 2.0;
+        // Rows at the edge count less: 37 of the 39 that have gradients, (Σw)²/Σw².
+        let rows = height as f64 - 4.0;
         let h = rows * contrast * contrast / (2.0 * root_pi * sigma);
         // Down the edge the noise's correlation adds up to 2 √π σ; across it the edge's own profile, met by the
         // correlation, gives E[exp(−d²/4σ²)] = 1/√2 for d of variance 2σ².

@@ -1,6 +1,6 @@
 //! Input that cannot be used: each an exit code, one sentence, and no file left behind.
 
-use crate::bench::{Bench, SMALL, measure, small_with};
+use crate::cli::bench::{Bench, SMALL, measure, small_with};
 use ebbmark::rehearsal::Truth;
 
 const GOOD_FLAGS: [&str; 6] = [

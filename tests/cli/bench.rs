@@ -6,29 +6,29 @@ use std::path::{Path, PathBuf};
 use std::process::Command;
 
 /// A folder of its own in which commands are run.
-pub struct Bench {
+pub(crate) struct Bench {
     folder: tempfile::TempDir,
 }
 
 /// What a command did.
-pub struct Done {
-    pub code: i32,
-    pub stdout: String,
-    pub stderr: String,
+pub(crate) struct Done {
+    pub(crate) code: i32,
+    pub(crate) stdout: String,
+    pub(crate) stderr: String,
 }
 
 impl Bench {
-    pub fn new() -> Self {
+    pub(crate) fn new() -> Self {
         Self {
             folder: tempfile::tempdir().unwrap(),
         }
     }
 
-    pub fn path(&self, name: &str) -> PathBuf {
+    pub(crate) fn path(&self, name: &str) -> PathBuf {
         self.folder.path().join(name)
     }
 
-    pub fn write(&self, name: &str, bytes: impl AsRef<[u8]>) -> PathBuf {
+    pub(crate) fn write(&self, name: &str, bytes: impl AsRef<[u8]>) -> PathBuf {
         let path = self.path(name);
         std::fs::File::create(&path)
             .and_then(|mut file| std::io::Write::write_all(&mut file, bytes.as_ref()))
@@ -37,12 +37,12 @@ impl Bench {
     }
 
     /// Everything in the folder, sorted, hidden files too.
-    pub fn names(&self) -> Vec<String> {
+    pub(crate) fn names(&self) -> Vec<String> {
         names(self.folder.path())
     }
 
     /// Runs `ebbmark` in the folder.
-    pub fn run<I: IntoIterator<Item = S>, S: AsRef<OsStr>>(&self, arguments: I) -> Done {
+    pub(crate) fn run<I: IntoIterator<Item = S>, S: AsRef<OsStr>>(&self, arguments: I) -> Done {
         let output = Command::new(env!("CARGO_BIN_EXE_ebbmark"))
             .args(arguments)
             .current_dir(self.folder.path())
@@ -56,16 +56,16 @@ impl Bench {
     }
 
     /// Films a scene into the folder.
-    pub fn film(&self, name: &str, scene: &str) -> Truth {
+    pub(crate) fn film(&self, name: &str, scene: &str) -> Truth {
         let scene = Scene::from_toml(scene).unwrap_or_else(|error| panic!("{error}\n{scene}"));
         rehearse(&scene, &self.path(name)).unwrap()
     }
 
-    pub fn read(&self, name: &str) -> Vec<u8> {
+    pub(crate) fn read(&self, name: &str) -> Vec<u8> {
         std::fs::read(self.path(name)).unwrap()
     }
 
-    pub fn json(&self, name: &str) -> serde_json::Value {
+    pub(crate) fn json(&self, name: &str) -> serde_json::Value {
         serde_json::from_slice(&self.read(name)).unwrap()
     }
 }
@@ -73,7 +73,7 @@ impl Bench {
 impl Done {
     /// The command did what it was asked, without a word on stderr.
     #[track_caller]
-    pub fn succeeds(self) -> Self {
+    pub(crate) fn succeeds(self) -> Self {
         assert_eq!(
             (self.code, self.stderr.as_str()),
             (0, ""),
@@ -85,7 +85,7 @@ impl Done {
 
     /// The command failed with a code and one sentence that holds all of `words`.
     #[track_caller]
-    pub fn fails(self, code: i32, words: &[&str]) {
+    pub(crate) fn fails(self, code: i32, words: &[&str]) {
         assert_eq!(self.code, code, "stderr: {}", self.stderr);
         assert_eq!(self.stdout, "", "a failure writes nothing to stdout");
         assert!(
@@ -109,7 +109,7 @@ impl Done {
     }
 }
 
-pub fn names(folder: &Path) -> Vec<String> {
+pub(crate) fn names(folder: &Path) -> Vec<String> {
     let entries = std::fs::read_dir(folder).unwrap();
     let mut names: Vec<String> = entries
         .map(|entry| entry.unwrap().file_name().to_string_lossy().into_owned())
@@ -119,10 +119,10 @@ pub fn names(folder: &Path) -> Vec<String> {
 }
 
 /// The small scene: 320 × 180, six seconds.
-pub const SMALL: &str = include_str!("../../fixtures/scenes/small.toml");
+pub(crate) const SMALL: &str = include_str!("../../fixtures/scenes/small.toml");
 
 /// The small scene with some of its text replaced; each replacement must find its text.
-pub fn small_with(changes: &[(&str, &str)]) -> String {
+pub(crate) fn small_with(changes: &[(&str, &str)]) -> String {
     changes.iter().fold(SMALL.to_owned(), |text, (from, to)| {
         assert!(text.contains(from), "`{from}` is not in the scene");
         text.replace(from, to)
@@ -130,7 +130,7 @@ pub fn small_with(changes: &[(&str, &str)]) -> String {
 }
 
 /// Marker, scale bar and length of a rehearsed film as flags.
-pub fn flags(truth: &Truth) -> Vec<String> {
+pub(crate) fn flags(truth: &Truth) -> Vec<String> {
     let marker = truth.marker_box_px;
     let bar = truth.scale_bar.as_ref().unwrap();
     let [[x1, y1], [x2, y2]] = bar.ends_px;
@@ -145,7 +145,7 @@ pub fn flags(truth: &Truth) -> Vec<String> {
 }
 
 /// `ebbmark measure CLIP` with the flags of a truth and more.
-pub fn measure(clip: &str, truth: &Truth, more: &[&str]) -> Vec<String> {
+pub(crate) fn measure(clip: &str, truth: &Truth, more: &[&str]) -> Vec<String> {
     let mut arguments = vec!["measure".to_owned(), clip.to_owned()];
     arguments.extend(flags(truth));
     arguments.extend(more.iter().map(|&word| word.to_owned()));

@@ -1,6 +1,6 @@
 //! Frame counts and stamps against the system's `ffprobe`.
 
-use crate::bench::{Bench, small_with};
+use crate::cli::bench::{Bench, small_with};
 use ebbmark::footage::{Footage, FrameSource, Limits};
 use std::path::Path;
 use std::process::Command;

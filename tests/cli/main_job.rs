@@ -1,6 +1,6 @@
 //! The main job on films whose truth is known.
 
-use crate::bench::{Bench, SMALL, measure, names, small_with};
+use crate::cli::bench::{Bench, SMALL, measure, names, small_with};
 use ebbmark::rehearsal::Truth;
 use serde_json::Value;
 

@@ -1,6 +1,6 @@
 //! The other verbs: inspect, refit, rehearse, help.
 
-use crate::bench::{Bench, SMALL, measure, names};
+use crate::cli::bench::{Bench, SMALL, measure, names};
 
 #[test]
 fn inspect_says_what_a_clip_is_and_writes_stills_with_a_grid() {

@@ -1,5 +1,10 @@
 //! Numbers that carry their exact derivatives, so that each certified model is written down once.
 
+#![allow(
+    clippy::suspicious_arithmetic_impl,
+    reason = "the product and quotient rules mix the operations"
+)]
+
 use std::ops::{Add, Div, Mul, Neg, Sub};
 
 /// No certified model has more parameters.

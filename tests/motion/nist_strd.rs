@@ -3,8 +3,8 @@
 //!
 //! Run with `cargo test --test motion -- --nocapture nist` to see the table.
 
-use crate::dual::Dual;
-use ebbmark::motion::least_squares::{Residuals, minimise};
+use crate::motion::dual::Dual;
+use ebbmark::motion::least_squares::{Patience, Residuals, minimise};
 use nalgebra::DMatrix;
 use std::error::Error;
 use std::f64::consts::PI;
@@ -190,7 +190,7 @@ fn nist_results_are_reached_from_both_starts_to_six_digits_or_more() -> Result<(
     for (name, model) in SETS {
         let problem = read(name, model)?;
         for (i, start) in problem.starts.iter().enumerate() {
-            let fit = match minimise(&problem, start, None) {
+            let fit = match minimise(&problem, start, None, Patience::Long) {
                 Ok(fit) => fit,
                 Err(error) => {
                     short.push(format!("{name} start {}: {error}", i + 1));

@@ -2,7 +2,7 @@
 
 use std::f64::consts::{PI, TAU};
 
-use ebbmark::footage::{ClipFacts, FrameClock};
+use ebbmark::footage::{CaptureRate, ClipFacts, FrameClock};
 use ebbmark::measurement::{
     EnergyFigures, FilmPart, Measurement, RecordRow, RowStatus, ScaleFacts, Still, Streak, Warning,
 };
@@ -246,7 +246,8 @@ impl Double {
             steady_box_px: Some([40.0, 30.0, 48.0, 48.0]),
             still: still(width, height, centre_px),
             streak: streak(rows),
-            n_lost: 9,
+            n_unsteady: 0,
+            capture_rate: CaptureRate::AsStamped,
         }
     }
 

@@ -5,7 +5,7 @@ use std::path::Path;
 
 use ebbmark::record::{RecordError, check_destination, write};
 
-use crate::double::Double;
+use crate::record::double::Double;
 
 /// The sheet beside a result; what it says is not this room's business.
 const RUN: &str = "clip = \"../rail-7.mp4\"\n";

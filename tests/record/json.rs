@@ -3,7 +3,7 @@
 use ebbmark::record::{result_json, result_json_text};
 use serde_json::Value;
 
-use crate::double::Double;
+use crate::record::double::Double;
 
 const QUANTITY_KEYS: [&str; 11] = [
     "period",

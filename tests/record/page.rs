@@ -3,7 +3,7 @@
 use ebbmark::measurement::Measurement;
 use ebbmark::record::{report_html, summary};
 
-use crate::double::Double;
+use crate::record::double::Double;
 
 const HOSTILE: &str = "<script>alert(1)</script>\"'& .mov";
 /// Four A4 pages of pictures; a mail server takes it.

@@ -4,7 +4,7 @@ use ebbmark::measurement::{Measurement, RowStatus};
 use ebbmark::record::streak_png;
 use image::RgbImage;
 
-use crate::double::Double;
+use crate::record::double::Double;
 
 const N_FRAMES: usize = 600;
 /// 600 lines of 420 samples: two columns a line, one row a sample, as the picture may be 1600 × 720 at most.

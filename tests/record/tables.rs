@@ -4,7 +4,7 @@ use csv::StringRecord;
 use ebbmark::measurement::RowStatus;
 use ebbmark::record::{cycles_csv, positions_csv};
 
-use crate::double::Double;
+use crate::record::double::Double;
 
 /// Half of the last decimal that a length or a time is written with, m or s.
 const HALF_A_NANO: f64 = 0.5e-9 + 1e-15;

@@ -2,27 +2,27 @@
 
 use ebbmark::footage::{FootageError, Frame, FrameSource, LumaView, PictureKind};
 
-pub const WIDTH: usize = 320;
-pub const HEIGHT: usize = 120;
+pub(crate) const WIDTH: usize = 320;
+pub(crate) const HEIGHT: usize = 120;
 /// Side of the marker, px.
-pub const MARKER_PX: usize = 24;
+pub(crate) const MARKER_PX: usize = 24;
 
 /// What one frame shows.
 #[derive(Clone, Copy)]
-pub struct Shot {
+pub(crate) struct Shot {
     /// Marker's centre, px; None: it is not there.
-    pub marker: Option<[f64; 2]>,
+    pub(crate) marker: Option<[f64; 2]>,
     /// A second, similar marker.
-    pub other: Option<[f64; 2]>,
+    pub(crate) other: Option<[f64; 2]>,
     /// A dark, textured block over x < this column.
-    pub hand_to_px: usize,
+    pub(crate) hand_to_px: usize,
     /// Factor on the luma.
-    pub light: f64,
-    pub damaged: bool,
+    pub(crate) light: f64,
+    pub(crate) damaged: bool,
 }
 
 impl Shot {
-    pub fn of(x: f64, y: f64) -> Self {
+    pub(crate) fn of(x: f64, y: f64) -> Self {
         Self {
             marker: Some([x, y]),
             other: None,
@@ -77,17 +77,17 @@ fn draw(shot: &Shot, number: usize) -> Vec<u8> {
 }
 
 /// Frames at 30 Hz in ticks of 1/600 s, drawn as they are asked for.
-pub struct Film {
-    pub shots: Vec<Shot>,
+pub(crate) struct Film {
+    pub(crate) shots: Vec<Shot>,
     next: usize,
     picture: Vec<u8>,
     /// Frames between places where reading may start again, as in a compressed film.
-    pub group: usize,
-    pub n_drawn: usize,
+    pub(crate) group: usize,
+    pub(crate) n_drawn: usize,
 }
 
 impl Film {
-    pub fn new(shots: Vec<Shot>) -> Self {
+    pub(crate) fn new(shots: Vec<Shot>) -> Self {
         Self {
             shots,
             next: 0,

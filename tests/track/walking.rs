@@ -1,6 +1,6 @@
 //! Through films in memory: where the marker was, and what is said when it is not there.
 
-use crate::film::{Film, MARKER_PX, Shot};
+use crate::track::film::{Film, MARKER_PX, Shot};
 use ebbmark::track::{FilmTrack, PixelBox, Plan, SightingOutcome, TrackError, walk};
 
 /// Position of frame `k` of a swing of 100 px with 40 frames a period: 16 px a frame at the most.

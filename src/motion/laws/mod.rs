@@ -2,13 +2,13 @@
 //!
 //! To add a law: a file here, and a row in [`LAWS`].
 
+mod dry;
 mod none;
 mod viscous;
 
-pub(super) use viscous::{Sinusoid, SinusoidProblem};
-
 use super::least_squares::LeastSquaresError;
 use super::readings::Readings;
+use super::sinusoid::Sinusoid;
 use crate::stats::f_upper;
 
 /// A law is ruled out by the nested test where its misfit would be so large by chance less often than this, as a 95 % interval rules out.
@@ -17,7 +17,7 @@ const SIGNIFICANCE: f64 = 0.05;
 const AICC_MARGIN: f64 = 10.0;
 
 /// The laws tried, the simplest first.
-const LAWS: [Law; 2] = [none::LAW, viscous::LAW];
+const LAWS: [Law; 3] = [none::LAW, viscous::LAW, dry::LAW];
 
 /// A law of loss: how it is called, which law contains it, and how it is fitted.
 #[derive(Debug)]
@@ -51,12 +51,14 @@ pub(super) struct LawFit {
     parameters: Vec<(&'static str, f64, Option<f64>, &'static str)>,
     sum_of_squares: f64,
     n_free: usize,
+    /// Variance enlargement of this law's own residuals.
+    enlargement: f64,
 }
 
 /// One law of loss, fitted to the record.
 #[derive(Clone, Debug, PartialEq)]
 pub struct LawTrial {
-    /// Key: `none`, `viscous`, …
+    /// Key: `none`, `viscous`, `dry`
     pub law: &'static str,
     /// Name, value, standard uncertainty (None where held), UCUM unit.
     pub parameters: Vec<(&'static str, f64, Option<f64>, &'static str)>,
@@ -73,44 +75,47 @@ pub struct LawTrial {
 /// Fits every law and says which are ruled out: one that is nested in another by the F test at 5 %, any by AICc.
 ///
 /// F = [(SS₁ − SS₂)/(p₂ − p₁)]/(enlargement·SS₂/(n − p₂)); AICc = n′ ln(SS/n) + 2k + 2k(k + 1)/(n′ − k − 1), with n′ = n/enlargement and k = p + 1.
-///
-/// # Errors
-/// That of the law that could not be fitted.
+/// AICc takes the smallest enlargement of all laws: what a wrong law leaves over looks like correlated noise and would shield it.
+/// A law that finds no minimum is left out.
 ///
 /// # Source
 /// [Hurvich and Tsai 1989](crate::sources::HurvichTsai89) for AICc.
-pub(super) fn trials(weighted: &Weighted) -> Result<Vec<LawTrial>, LeastSquaresError> {
+pub(super) fn trials(weighted: &Weighted) -> Vec<LawTrial> {
     let fits: Vec<(&Law, LawFit)> = LAWS
         .iter()
-        .map(|law| Ok((law, (law.fit)(weighted)?)))
-        .collect::<Result<_, LeastSquaresError>>()?;
+        .filter_map(|law| Some((law, (law.fit)(weighted).ok()?)))
+        .collect();
+    let enlargement = fits
+        .iter()
+        .map(|(_, fit)| fit.enlargement)
+        .fold(weighted.enlargement, f64::min);
+    let n_effective = weighted.readings.len() as f64 / enlargement;
     let lowest = fits
         .iter()
-        .map(|(_, fit)| aicc(fit, weighted))
+        .map(|(_, fit)| aicc(fit, weighted, n_effective))
         .fold(f64::INFINITY, f64::min);
-    Ok(fits
-        .iter()
-        .map(|(law, fit)| {
-            let container = fits
-                .iter()
-                .find(|(other, _)| law.nested_in == Some(other.key));
-            let (excluded, reason) = judge(
-                law,
-                fit,
-                container.map(|(law, fit)| (*law, fit)),
-                aicc(fit, weighted) - lowest,
-                weighted,
-            );
-            LawTrial {
-                law: law.key,
-                parameters: fit.parameters.clone(),
-                rms_m: rms_m(fit, weighted),
-                aicc: aicc(fit, weighted),
-                excluded,
-                reason,
-            }
-        })
-        .collect())
+    let trial = |(law, fit): &(&Law, LawFit)| {
+        let container = fits
+            .iter()
+            .find(|(other, _)| law.nested_in == Some(other.key));
+        let aicc = aicc(fit, weighted, n_effective);
+        let (excluded, reason) = judge(
+            law,
+            fit,
+            container.map(|(law, fit)| (*law, fit)),
+            aicc - lowest,
+            weighted,
+        );
+        LawTrial {
+            law: law.key,
+            parameters: fit.parameters.clone(),
+            rms_m: rms_m(fit, weighted),
+            aicc,
+            excluded,
+            reason,
+        }
+    };
+    fits.iter().map(trial).collect()
 }
 
 fn judge(
@@ -169,9 +174,9 @@ fn rms_m(fit: &LawFit, weighted: &Weighted) -> f64 {
     (fit.sum_of_squares / weighted.weight_per_m.iter().map(|w| w * w).sum::<f64>()).sqrt()
 }
 
-fn aicc(fit: &LawFit, weighted: &Weighted) -> f64 {
+fn aicc(fit: &LawFit, weighted: &Weighted, n_effective: f64) -> f64 {
     let n = weighted.readings.len() as f64;
-    let (n_effective, k) = (n / weighted.enlargement, fit.n_free as f64 + 1.0);
+    let k = fit.n_free as f64 + 1.0;
     // Where hardly more effective readings than parameters are left the correction has no meaning; 1 keeps it finite and large.
     let room = (n_effective - k - 1.0).max(1.0);
     // A fit without residuals would have −∞: the smallest positive number stands for what rounding hides.

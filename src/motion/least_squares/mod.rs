@@ -9,21 +9,26 @@
 //! * one test of convergence for every ending, the relative offset of Bates and Watts, which is in units of the result's own
 //!   uncertainty and needs no tolerance in the problem's units.
 
-use levenberg_marquardt::{LeastSquaresProblem, LevenbergMarquardt};
-use nalgebra::{DMatrix, DVector, Dyn, Owned};
+mod tangent;
+mod trust_region;
+
+pub use tangent::tangent_basis;
+
+use nalgebra::{DMatrix, DVector};
+use tangent::{Tangent, tangent};
+use trust_region::trust_region;
 
 /// A minimum is accepted where the relative offset is below this: the estimate is then within 1e-6 of the radius of its confidence region.
 const RELATIVE_OFFSET_MAX: f64 = 1e-6;
-/// Or where a full Gauss–Newton step moves no parameter by more than this part of its scale: fits whose residuals are rounding errors.
-const STEP_MAX_REL: f64 = 1e-9;
+/// Or where a full Gauss–Newton step would move the model by less than this part of what the parameters contribute to it: fits whose residuals
+/// are rounding errors. (A test on the parameters themselves would never pass for one that is 0.)
+const STEP_MAX_REL: f64 = 1e-12;
 /// Runs of the trust region; each takes its scale from where the last one stopped. No NIST set needs a second.
-const MAX_RUNS: usize = 8;
-/// Evaluations a run may take for each parameter. Bennett5 takes a thousand in all.
-const PATIENCE: usize = 2000;
+const MAX_RUNS: usize = 3;
 /// Polishing steps; they stop by themselves when the gradient no longer falls.
 const MAX_POLISH_STEPS: usize = 40;
-/// Tolerance handed to the trust region: the rounding of a double, so that it stops only where it can do no more.
-const TRUST_REGION_TOL: f64 = f64::EPSILON;
+/// A step that leaves more than this part of what it should remove is slow.
+const SLOW: f64 = 0.3;
 
 /// A weighted least-squares problem: residuals rᵢ = (model − reading)ᵢ/σᵢ and their derivatives.
 ///
@@ -37,12 +42,30 @@ pub trait Residuals {
     fn jacobian(&self, parameters: &[f64], out: &mut DMatrix<f64>);
 }
 
+/// How long to look for a minimum.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Patience {
+    /// A start of the right kind: 20 evaluations for each parameter. A record that is no oscillation is then refused in a second, not a minute.
+    Short,
+    /// A start that may be wrong by orders of magnitude: 2000 evaluations for each parameter. Bennett5 takes a thousand in all.
+    Long,
+}
+
+impl Patience {
+    fn evaluations_per_parameter(self) -> usize {
+        match self {
+            Self::Short => 20,
+            Self::Long => 2000,
+        }
+    }
+}
+
 /// By which test a minimum was accepted.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum Ending {
     /// The residual is orthogonal to the tangent plane, to a millionth of its own scatter.
     Orthogonal,
-    /// A further step would not change the parameters: the residuals are rounding errors.
+    /// A further step would not change the model: the residuals are rounding errors.
     StepNegligible,
 }
 
@@ -130,6 +153,7 @@ pub fn minimise<P: Residuals>(
     problem: &P,
     start: &[f64],
     scale: Option<&[f64]>,
+    patience: Patience,
 ) -> Result<Solution, LeastSquaresError> {
     check(problem, start)?;
     let mut parameters = start.to_vec();
@@ -138,7 +162,7 @@ pub fn minimise<P: Residuals>(
     });
     for run in 1..=MAX_RUNS {
         let unit = scale.map_or_else(|| own_scale(&parameters), <[f64]>::to_vec);
-        let stopped = trust_region(problem, &parameters, &unit);
+        let stopped = trust_region(problem, &parameters, &unit, patience);
         let settled = stopped == parameters;
         parameters = stopped;
         let polished = polish(problem, &parameters, 0.0, run);
@@ -161,6 +185,14 @@ pub fn minimise<P: Residuals>(
 pub fn refine<P: Residuals>(problem: &P, start: &[f64]) -> Result<Solution, LeastSquaresError> {
     check(problem, start)?;
     polish(problem, start, RELATIVE_OFFSET_MAX, 0)
+}
+
+/// Goes downhill for one short run of the trust region from `start` and returns where it stopped, without a verdict: a step of an
+/// iteration that judges itself, as a reweighted fit does.
+///
+/// * `scale`: as in [`minimise`].
+pub fn advance<P: Residuals>(problem: &P, start: &[f64], scale: &[f64]) -> Vec<f64> {
+    trust_region(problem, start, scale, Patience::Short)
 }
 
 /// The door: enough residuals, and finite ones.
@@ -191,129 +223,40 @@ fn sum_of_squares<P: Residuals>(problem: &P, parameters: &[f64]) -> (Vec<f64>, f
     (residuals, sum)
 }
 
-/// One run of the trust region, in parameters divided by `unit`. Where it stops is judged by [`polish`], whatever it says itself.
-fn trust_region<P: Residuals>(problem: &P, start: &[f64], unit: &[f64]) -> Vec<f64> {
-    let scaled = Scaled {
-        problem,
-        unit,
-        at: DVector::from_iterator(start.len(), start.iter().zip(unit).map(|(p, s)| p / s)),
-    };
-    let (scaled, _report) = LevenbergMarquardt::new()
-        .with_tol(TRUST_REGION_TOL)
-        .with_gtol(TRUST_REGION_TOL)
-        .with_scale_diag(false)
-        .with_patience(PATIENCE)
-        .minimize(scaled);
-    scaled.parameters(&scaled.at)
+/// Parameters with all that a step from them needs.
+struct Point {
+    parameters: Vec<f64>,
+    residuals: Vec<f64>,
+    sum: f64,
+    plane: Tangent,
 }
 
-/// The problem in the form, and in the parameters' units, that the trust region takes.
-struct Scaled<'a, P> {
-    problem: &'a P,
-    unit: &'a [f64],
-    at: DVector<f64>,
-}
-
-impl<P> Scaled<'_, P> {
-    fn parameters(&self, at: &DVector<f64>) -> Vec<f64> {
-        at.iter().zip(self.unit).map(|(q, s)| q * s).collect()
+impl Point {
+    /// The point `part` of a step away; None where the model is not finite there.
+    fn beyond<P: Residuals>(
+        problem: &P,
+        from: &[f64],
+        step: &DVector<f64>,
+        part: f64,
+    ) -> Option<Self> {
+        let parameters: Vec<f64> = from
+            .iter()
+            .zip(step.iter())
+            .map(|(p, d)| p + part * d)
+            .collect();
+        let (residuals, sum) = sum_of_squares(problem, &parameters);
+        let plane = if sum.is_finite() {
+            tangent(problem, &parameters, &residuals)
+        } else {
+            None
+        }?;
+        Some(Self {
+            parameters,
+            residuals,
+            sum,
+            plane,
+        })
     }
-}
-
-impl<P: Residuals> LeastSquaresProblem<f64, Dyn, Dyn> for Scaled<'_, P> {
-    type ResidualStorage = Owned<f64, Dyn>;
-    type JacobianStorage = Owned<f64, Dyn, Dyn>;
-    type ParameterStorage = Owned<f64, Dyn>;
-
-    fn set_params(&mut self, at: &DVector<f64>) {
-        self.at.copy_from(at);
-    }
-    fn params(&self) -> DVector<f64> {
-        self.at.clone()
-    }
-    fn residuals(&self) -> Option<DVector<f64>> {
-        let mut residuals = DVector::zeros(self.problem.n_residuals());
-        self.problem
-            .residuals(&self.parameters(&self.at), residuals.as_mut_slice());
-        // A step into a region where the model overflows must be refused, not end the run: a huge residual does that.
-        residuals.apply(|r| {
-            if !r.is_finite() {
-                *r = 1e100;
-            }
-        });
-        Some(residuals)
-    }
-    fn jacobian(&self) -> Option<DMatrix<f64>> {
-        let mut jacobian = DMatrix::zeros(self.problem.n_residuals(), self.unit.len());
-        self.problem
-            .jacobian(&self.parameters(&self.at), &mut jacobian);
-        for (mut column, s) in jacobian.column_iter_mut().zip(self.unit) {
-            column *= *s;
-        }
-        jacobian.iter().all(|v| v.is_finite()).then_some(jacobian)
-    }
-}
-
-/// The tangent plane at a point: what a Gauss–Newton step, the convergence test and the covariance need.
-struct Tangent {
-    step: DVector<f64>,
-    covariance_factor: DMatrix<f64>,
-    /// ‖Qᵀr‖: the part of the residual that a step in the tangent plane would remove.
-    removable: f64,
-}
-
-/// QR of the Jacobian with columns scaled to length one: normal equations would lose half the digits.
-fn tangent<P: Residuals>(problem: &P, parameters: &[f64], residuals: &[f64]) -> Option<Tangent> {
-    let n_parameters = parameters.len();
-    let (jacobian, length) = scaled_jacobian(problem, parameters)?;
-    let qr = jacobian.qr();
-    let mut rotated = DVector::from_column_slice(residuals);
-    qr.q_tr_mul(&mut rotated);
-    let along = rotated.rows(0, n_parameters).into_owned();
-    let r = qr.r();
-    let r_inverse = r.solve_upper_triangular(&DMatrix::identity(n_parameters, n_parameters))?;
-    let mut step = -(&r_inverse * &along);
-    let mut covariance_factor = &r_inverse * r_inverse.transpose();
-    for i in 0..n_parameters {
-        step[i] /= length[i];
-        for j in 0..n_parameters {
-            covariance_factor[(i, j)] /= length[i] * length[j];
-        }
-    }
-    let finite = step
-        .iter()
-        .chain(covariance_factor.iter())
-        .all(|v| v.is_finite());
-    finite.then(|| Tangent {
-        step,
-        covariance_factor,
-        removable: along.norm(),
-    })
-}
-
-/// Orthonormal columns (n × p) that span the tangent plane at `parameters`: what a fit takes out of the residuals.
-///
-/// None where the model is not finite there or does not depend on a parameter.
-pub fn tangent_basis<P: Residuals>(problem: &P, parameters: &[f64]) -> Option<DMatrix<f64>> {
-    let (jacobian, _) = scaled_jacobian(problem, parameters)?;
-    Some(jacobian.qr().q())
-}
-
-/// The Jacobian with columns of length one, and their lengths.
-fn scaled_jacobian<P: Residuals>(
-    problem: &P,
-    parameters: &[f64],
-) -> Option<(DMatrix<f64>, Vec<f64>)> {
-    let mut jacobian = DMatrix::zeros(problem.n_residuals(), parameters.len());
-    problem.jacobian(parameters, &mut jacobian);
-    let length: Vec<f64> = jacobian.column_iter().map(|column| column.norm()).collect();
-    if length.iter().any(|l| !l.is_finite() || *l <= 0.0) {
-        return None;
-    }
-    for (mut column, l) in jacobian.column_iter_mut().zip(&length) {
-        column /= *l;
-    }
-    Some((jacobian, length))
 }
 
 /// Gauss–Newton steps while the removable part of the residual falls and the relative offset is above `enough`, then the test of convergence.
@@ -337,29 +280,32 @@ fn polish<P: Residuals>(
         if offset(sum, plane.removable) <= enough {
             break;
         }
-        let next: Vec<f64> = parameters
-            .iter()
-            .zip(plane.step.iter())
-            .map(|(p, d)| p + d)
-            .collect();
-        let (next_residuals, next_sum) = sum_of_squares(problem, &next);
-        if !next_sum.is_finite() {
-            break;
-        }
-        let Some(next_plane) = tangent(problem, &next, &next_residuals) else {
+        let full = Point::beyond(problem, &parameters, &plane.step, 1.0);
+        // Where the residuals are large and the model bends, full steps overshoot and swing about the minimum; half steps then do not.
+        let slow = full
+            .as_ref()
+            .is_none_or(|point| point.plane.removable > SLOW * plane.removable);
+        let half = if slow {
+            Point::beyond(problem, &parameters, &plane.step, 0.5)
+        } else {
+            None
+        };
+        let best = full
+            .into_iter()
+            .chain(half)
+            .min_by(|a, b| a.plane.removable.total_cmp(&b.plane.removable));
+        let Some(next) = best.filter(|point| point.plane.removable < plane.removable) else {
             break;
         };
-        if next_plane.removable >= plane.removable {
-            break;
-        }
-        (parameters, residuals, sum, plane) = (next, next_residuals, next_sum, next_plane);
+        Point {
+            parameters,
+            residuals,
+            sum,
+            plane,
+        } = next;
     }
     let relative_offset = offset(sum, plane.removable);
-    let step_negligible = plane
-        .step
-        .iter()
-        .zip(own_scale(&parameters))
-        .all(|(d, s)| d.abs() <= STEP_MAX_REL * s);
+    let step_negligible = plane.removable <= STEP_MAX_REL * plane.size;
     let ending = match (relative_offset <= RELATIVE_OFFSET_MAX, step_negligible) {
         (true, _) => Ending::Orthogonal,
         (false, true) => Ending::StepNegligible,
@@ -374,4 +320,103 @@ fn polish<P: Residuals>(
         ending,
         n_runs,
     })
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// y = p₀ + p₁x², with a third parameter that does nothing where `idle` is true.
+    struct Parabola {
+        x: Vec<f64>,
+        y: Vec<f64>,
+        idle: bool,
+    }
+
+    impl Residuals for Parabola {
+        fn n_residuals(&self) -> usize {
+            self.x.len()
+        }
+        fn residuals(&self, p: &[f64], out: &mut [f64]) {
+            for (r, (x, y)) in out.iter_mut().zip(self.x.iter().zip(&self.y)) {
+                *r = p[0] + p[1] * x * x - y;
+            }
+        }
+        fn jacobian(&self, _: &[f64], out: &mut DMatrix<f64>) {
+            out.fill(0.0);
+            for (i, x) in self.x.iter().enumerate() {
+                out[(i, 0)] = 1.0;
+                out[(i, 1)] = x * x;
+            }
+            if !self.idle {
+                assert_eq!(out.ncols(), 2);
+            }
+        }
+    }
+
+    fn parabola(idle: bool) -> Parabola {
+        Parabola {
+            x: vec![0.0, 1.0, 1.0, 0.0],
+            y: vec![1.0, 3.0, 5.0, 3.0],
+            idle,
+        }
+    }
+
+    #[test]
+    fn a_line_by_eye() -> Result<(), LeastSquaresError> {
+        // Two readings at x² = 0 (mean 2) and two at 1 (mean 4), each 1 off its mean: p = (2, 2), Σr² = 4, s² = 2, u(p₀) = √(2/2), u(p₁) = √(2/2 + 2/2).
+        let found = minimise(&parabola(false), &[0.0, 0.0], None, Patience::Short)?;
+        let u = found.standard_uncertainties();
+        for (got, want) in [
+            (found.parameters[0], 2.0),
+            (found.parameters[1], 2.0),
+            (found.sum_of_squares, 4.0),
+            (u[0], 1.0),
+            (u[1], 2.0_f64.sqrt()),
+        ] {
+            assert!((got - want).abs() < 1e-14, "got {got}, want {want}");
+        }
+        assert_eq!(found.ending, Ending::Orthogonal);
+        Ok(())
+    }
+
+    #[test]
+    fn exact_readings_end_by_the_step_that_would_change_nothing() -> Result<(), LeastSquaresError> {
+        let mut exact = parabola(false);
+        exact.y = exact.x.iter().map(|x| 0.1 + 0.3 * x * x).collect();
+        let found = minimise(&exact, &[1.0, 1.0], None, Patience::Short)?;
+        assert!(
+            (found.parameters[0] - 0.1).abs() < 1e-15 && (found.parameters[1] - 0.3).abs() < 1e-15
+        );
+        Ok(())
+    }
+
+    #[test]
+    fn an_idle_parameter_is_said_to_be_undetermined() {
+        let found = minimise(&parabola(true), &[0.0, 0.0, 1.0], None, Patience::Short)
+            .map(|found| found.parameters);
+        assert_eq!(found, Err(LeastSquaresError::Singular { n_parameters: 3 }));
+    }
+
+    #[test]
+    fn as_many_parameters_as_readings_leave_no_scatter() {
+        let mut short = parabola(false);
+        short.x.truncate(2);
+        let found =
+            minimise(&short, &[0.0, 0.0], None, Patience::Short).map(|found| found.parameters);
+        assert_eq!(
+            found,
+            Err(LeastSquaresError::TooFewResiduals {
+                n_residuals: 2,
+                n_parameters: 2
+            })
+        );
+    }
+
+    #[test]
+    fn a_start_that_is_not_finite_is_refused() {
+        let found = minimise(&parabola(false), &[f64::NAN, 0.0], None, Patience::Short)
+            .map(|found| found.parameters);
+        assert_eq!(found, Err(LeastSquaresError::NotFinite));
+    }
 }
