@@ -5,6 +5,7 @@
 mod energy;
 mod error;
 mod film;
+mod part;
 mod parts;
 mod still;
 mod table;
@@ -48,7 +49,7 @@ pub fn measure(
     let facts = film::clip_facts(&footage, clip, &track, sha256)?;
     let film = film::Film::new(&run, bar, footage.facts(), track, clip)?;
     let mut rows = film.rows(&run)?;
-    let part = fit_rows(&mut rows, &run.fit, Some(film.u_scale_rel()))?;
+    let part = fit_rows(&mut rows, &run.fit, Some(film.terms()))?;
     let film_part = film.into_part(facts, &run, &rows);
     part.into_measurement(
         &sheet.with_source(&film_part.clip.file_name),
@@ -67,7 +68,7 @@ pub fn measure(
 pub fn refit(table: &Path, sheet: &RunSheet) -> Result<Measurement, MeasureError> {
     let run = sheet.fit_run()?;
     let (mut rows, file_name, sha256) = table::read(table)?;
-    film::mark_outside(&mut rows, &run)?;
+    part::mark_outside(&mut rows, &run)?;
     let part = fit_rows(&mut rows, &run, None)?;
     let mut measurement = part.into_measurement(&sheet.with_table(&file_name), None, rows)?;
     measurement.source_sha256 = sha256;
@@ -88,7 +89,7 @@ struct FittedPart {
 fn fit_rows(
     rows: &mut [RecordRow],
     run: &FitRun,
-    u_scale_rel: Option<(f64, bool)>,
+    film: Option<film::FilmTerms>,
 ) -> Result<FittedPart, MeasureError> {
     let taking_part: Vec<usize> = (0..rows.len())
         .filter(|&at| rows[at].status == RowStatus::Used)
@@ -109,8 +110,9 @@ fn fit_rows(
     let external = ExternalTerms {
         u_clock_rel: run.clock.u_rel(),
         clock_assumed: run.clock.assumed,
-        u_scale_rel: u_scale_rel.map(|(u_rel, _)| u_rel),
-        scale_assumed: u_scale_rel.is_some_and(|(_, assumed)| assumed),
+        u_scale_rel: film.map(|film| film.u_scale_rel),
+        scale_assumed: film.is_some_and(|film| film.scale_assumed),
+        longest_exposure_s: film.map(|film| film.frame_interval_s),
     };
     let quantities = motion::quantities(&fit, &external);
     let cycles = motion::cycles(&records, &fit);

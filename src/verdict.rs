@@ -78,13 +78,15 @@ fn loss_present(fit: &MotionFit, quantities: &MotionQuantities) -> Verdict {
     let loss = &quantities.energy_loss_per_cycle;
     let upper = loss.interval95[1].unwrap_or(f64::INFINITY);
     let (answer, sentence) = if low > 0.0 {
-        let [from, to] = loss.interval95.map(|end| percent(end.unwrap_or(0.0)));
-        let lost = percent(loss.value.unwrap_or(0.0));
+        let [from, to] = loss.interval95.map(|end| 100.0 * end.unwrap_or(0.0));
+        let lost = rounded(100.0 * loss.value.unwrap_or(0.0), half(from, to));
+        let expanded = significant(half(from, to), 2);
         (
             Answer::Yes,
             format!(
-                "Energy is lost: {lost} of it in a cycle (95 % interval {from} to {to}), and the decay rate of {} s⁻¹ stands clear of zero.",
-                rounded(gamma, half(low, high) / 2.0)
+                "Energy is lost: {lost} ± {expanded} % of it in a cycle (95 %), and the decay rate of {} ± {} s⁻¹ stands clear of zero.",
+                rounded(gamma, half(low, high)),
+                significant(half(low, high), 2)
             ),
         )
     } else if high < 0.0 {
@@ -92,7 +94,7 @@ fn loss_present(fit: &MotionFit, quantities: &MotionQuantities) -> Verdict {
             Answer::No,
             format!(
                 "The amplitude grows, by {} s⁻¹: energy is fed in rather than lost; check that nothing drives the motion.",
-                rounded(-gamma, half(low, high) / 2.0)
+                rounded(-gamma, half(low, high))
             ),
         )
     } else if upper < RELEVANT_LOSS_PER_CYCLE {
@@ -145,11 +147,10 @@ fn loss_shifts_period(fit: &MotionFit, quantities: &MotionQuantities) -> Verdict
     }
     let zeta = quantities.damping_ratio.value.unwrap_or(0.0);
     let expanded_s = EXPANDED * quantities.period.u.unwrap_or(f64::INFINITY);
-    let (shift, against) = (
-        prefixed(shift_s(zeta), "s", 2),
-        prefixed(expanded_s, "s", 2),
-    );
-    let (from, to) = (prefixed(low, "s", 2), prefixed(high, "s", 2));
+    let digits = digits_that_tell(low, high);
+    let shift = prefixed(shift_s(zeta), "s", digits);
+    let against = prefixed(expanded_s, "s", 2);
+    let (from, to) = (prefixed(low, "s", digits), prefixed(high, "s", digits));
     let (answer, sentence) = if loss_is_dry(fit) {
         (
             Answer::No,
@@ -168,7 +169,8 @@ fn loss_shifts_period(fit: &MotionFit, quantities: &MotionQuantities) -> Verdict
         (
             Answer::No,
             format!(
-                "Viscous loss would make the period at most {to} longer, less than the {against} (k = 2) to which it is known, so that loss does not matter to it; dry friction would not move it at all."
+                "Viscous loss would make the period at most {} longer, less than the {against} (k = 2) to which it is known, so that loss does not matter to it; dry friction would not move it at all.",
+                prefixed(high, "s", 2)
             ),
         )
     } else {
@@ -237,6 +239,15 @@ fn longer_film(fit: &MotionFit, decides: impl Fn(f64) -> bool) -> String {
     "no longer film would decide it at this estimate, only a clock and a camera that are known better".to_owned()
 }
 
+/// Significant digits that tell the ends of an interval apart: two of its width, from two to six.
+fn digits_that_tell(low: f64, high: f64) -> i32 {
+    let ratio = high.abs().max(low.abs()) / (high - low).abs();
+    let steps = (1..5)
+        .take_while(|&power| ratio > 10_f64.powi(power))
+        .count();
+    2 + i32::try_from(steps).unwrap_or(0)
+}
+
 fn half(low: f64, high: f64) -> f64 {
     0.5 * (high - low)
 }
@@ -271,6 +282,7 @@ mod tests {
             clock_assumed: false,
             u_scale_rel: None,
             scale_assumed: false,
+            longest_exposure_s: None,
         };
         verdicts(&fit, &quantities(&fit, &external))
     }
@@ -374,6 +386,7 @@ mod tests {
             clock_assumed: false,
             u_scale_rel: None,
             scale_assumed: false,
+            longest_exposure_s: None,
         };
         let verdicts = verdicts(&fit, &quantities(&fit, &external));
         assert_eq!(answers(&verdicts), [Answer::Yes, Answer::No]);

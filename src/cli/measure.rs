@@ -1,10 +1,12 @@
 //! `ebbmark measure CLIP|RUN.toml`
 
+use super::fit_flags::{FitArguments, over};
 use super::numbers::{four, one};
-use super::outcome::{Failure, print};
+use super::outcome::Failure;
+use super::output::OutputArguments;
 use super::progress::Progress;
 use super::{refit, repeat};
-use crate::measurement::{Measurement, measure};
+use crate::measurement::measure;
 use crate::record;
 use crate::run_sheet::RunSheet;
 use std::path::{Path, PathBuf};
@@ -46,86 +48,6 @@ pub(super) struct Arguments {
     fit: FitArguments,
     #[command(flatten)]
     output: OutputArguments,
-}
-
-/// What film and table have in common.
-#[derive(Debug, clap::Args)]
-pub(super) struct FitArguments {
-    /// Start of the part that is fitted, s of the film's own time
-    #[arg(long, value_name = "S", value_parser = one, allow_hyphen_values = true)]
-    from: Option<f64>,
-    /// End of the part that is fitted, s of the film's own time
-    #[arg(long, value_name = "S", value_parser = one, allow_hyphen_values = true)]
-    to: Option<f64>,
-    /// Limit of error of the clock's rate, ppm (rectangular)
-    #[arg(long, value_name = "U", value_parser = one, allow_hyphen_values = true)]
-    clock_ppm: Option<f64>,
-    /// Moving mass, kg, for stiffness and energies
-    #[arg(long, value_name = "KG", value_parser = one, allow_hyphen_values = true)]
-    mass: Option<f64>,
-    /// Standard uncertainty of the mass, kg
-    #[arg(long, value_name = "KG", value_parser = one, allow_hyphen_values = true)]
-    mass_u: Option<f64>,
-}
-
-impl FitArguments {
-    /// Lays the flags over a sheet.
-    pub(super) fn lay_over(&self, sheet: &mut RunSheet) {
-        over(&mut sheet.time.from_s, self.from);
-        over(&mut sheet.time.to_s, self.to);
-        over(&mut sheet.time.clock_ppm, self.clock_ppm);
-        over(&mut sheet.glider.mass_kg, self.mass);
-        over(&mut sheet.glider.u_mass_kg, self.mass_u);
-    }
-}
-
-/// Where results go and what is said.
-#[derive(Debug, clap::Args)]
-pub(super) struct OutputArguments {
-    /// Folder for the results [default: the clip's name with .ebbmark, in the current folder]
-    #[arg(long, value_name = "DIR")]
-    out: Option<PathBuf>,
-    /// Print result.json to stdout, and nothing else there
-    #[arg(long)]
-    json: bool,
-    /// Print nothing but errors
-    #[arg(long)]
-    pub(super) quiet: bool,
-}
-
-impl OutputArguments {
-    /// The folder for the results of a file.
-    pub(super) fn folder(&self, source: &Path) -> PathBuf {
-        let default = || {
-            let stem = source.file_stem().map_or_else(
-                || "result".into(),
-                |stem| stem.to_string_lossy().into_owned(),
-            );
-            PathBuf::from(format!("{stem}.ebbmark"))
-        };
-        self.out.clone().unwrap_or_else(default)
-    }
-
-    /// Writes the folder and says what is in it.
-    pub(super) fn deliver(
-        &self,
-        measurement: &Measurement,
-        run_toml: &str,
-        folder: &Path,
-    ) -> Result<(), Failure> {
-        record::write(measurement, run_toml, folder)?;
-        if self.json {
-            return print(&record::result_json_text(measurement));
-        }
-        if self.quiet {
-            return Ok(());
-        }
-        print(&format!(
-            "{}\nReport: {}\n",
-            record::summary(measurement).trim_end(),
-            folder.join("report.html").display()
-        ))
-    }
 }
 
 /// Measures, writes the folder, says what came out.
@@ -196,11 +118,5 @@ impl Arguments {
             sheet.marker.at_frame = at_frame;
         }
         self.fit.lay_over(sheet);
-    }
-}
-
-fn over<T: Copy>(key: &mut Option<T>, flag: Option<T>) {
-    if flag.is_some() {
-        *key = flag;
     }
 }

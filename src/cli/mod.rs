@@ -4,10 +4,12 @@
 //! that the library takes. Results go to files and a short summary to stdout; a failure is one sentence on stderr.
 
 mod demo;
+mod fit_flags;
 mod inspect;
 mod measure;
 mod numbers;
 mod outcome;
+mod output;
 mod progress;
 mod refit;
 mod rehearse;

@@ -1,7 +1,8 @@
 //! `ebbmark refit POSITIONS.csv`
 
-use super::measure::{FitArguments, OutputArguments};
+use super::fit_flags::FitArguments;
 use super::outcome::Failure;
+use super::output::OutputArguments;
 use super::repeat;
 use crate::measurement::refit;
 use crate::record;

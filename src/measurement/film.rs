@@ -1,11 +1,12 @@
 //! From the track of a film to rows of the position–time record.
 
+use super::part::{self, Part};
 use super::{FilmPart, MeasureError, RecordRow, RowStatus, ScaleFacts, Streak, still};
 use crate::footage::{
     CaptureRate, ClipFacts, Footage, FootageError, FrameClock, FrameTimes, Orientation,
     StreamFacts, frame_clock, time_scale,
 };
-use crate::run_sheet::{FilmRun, FitRun};
+use crate::run_sheet::FilmRun;
 use crate::scale::{ScaleAxis, ScaleBar, motion_axis};
 use crate::track::{FilmTrack, PixelBox, Plan, Sighting, TrackError};
 use sha2::{Digest, Sha256};
@@ -117,6 +118,17 @@ pub(super) fn clip_facts(
     })
 }
 
+/// What the fit needs to know of a film beyond its positions.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct FilmTerms {
+    /// Relative standard uncertainty of the scale.
+    pub(super) u_scale_rel: f64,
+    /// True where a part of it is our default.
+    pub(super) scale_assumed: bool,
+    /// Time from frame to frame, s of capture time.
+    pub(super) frame_interval_s: f64,
+}
+
 /// A film whose marker was followed, with its times, its axis and its scale.
 pub(super) struct Film {
     track: FilmTrack,
@@ -163,17 +175,7 @@ impl Film {
             .collect();
         part.check_seen(&path_px, &times)?;
         let axis = motion_axis(&seen)?;
-        let along: Vec<f64> = seen
-            .iter()
-            .map(|&p_px| axis.along_and_off_px(p_px)[0])
-            .collect();
-        let (low, high) = ends(&along);
-        if high - low < LEAST_TRAVEL_PX {
-            return Err(MeasureError::NoMotion {
-                extent_px: high - low,
-                least_px: LEAST_TRAVEL_PX,
-            });
-        }
+        part::check_travel(&axis, &seen)?;
         Ok(Self {
             track,
             orientation: facts.orientation,
@@ -186,9 +188,13 @@ impl Film {
         })
     }
 
-    /// Relative standard uncertainty of the scale, and whether a part of it is assumed.
-    pub(super) fn u_scale_rel(&self) -> (f64, bool) {
-        (self.scale.bar.u_rel(), self.scale.bar.assumed())
+    /// What the fit needs to know of the film beyond its positions.
+    pub(super) fn terms(&self) -> FilmTerms {
+        FilmTerms {
+            u_scale_rel: self.scale.bar.u_rel(),
+            scale_assumed: self.scale.bar.assumed(),
+            frame_interval_s: self.clock.interval_s * self.clock.time_scale,
+        }
     }
 
     /// A row for every frame; the fit's columns are still empty.
@@ -377,107 +383,6 @@ fn display_path(track: &FilmTrack, orientation: &Orientation) -> (Vec<Option<[f6
         })
         .collect();
     (path, n_unsteady)
-}
-
-/// The part of the film that is fitted, in file time.
-struct Part {
-    from_s: f64,
-    to_s: f64,
-}
-
-/// Least length of the marker's path, px: a swing below it is lost in what compression does to a picture at rest.
-const LEAST_TRAVEL_PX: f64 = 1.0;
-/// Share of a part's frames from which a marker that never comes back counts as having left.
-const LEFT_SHARE: f64 = 0.1;
-/// Share of a part's frames in which the marker must be found.
-const SEEN_SHARE: f64 = 0.5;
-
-impl Part {
-    fn of(run: &FitRun, times: &FrameTimes) -> Result<Self, MeasureError> {
-        let part = Self {
-            from_s: run.from_s.unwrap_or(f64::NEG_INFINITY),
-            to_s: run.to_s.unwrap_or(f64::INFINITY),
-        };
-        if part.frames(times).next().is_none() {
-            let (first_s, last_s) = ends(&times.t_s);
-            return Err(MeasureError::EmptyPart {
-                from_s: part.from_s,
-                to_s: part.to_s,
-                first_s,
-                last_s,
-            });
-        }
-        Ok(part)
-    }
-
-    fn holds(&self, t_s: f64) -> bool {
-        (self.from_s..=self.to_s).contains(&t_s)
-    }
-
-    fn frames<'a>(&'a self, times: &'a FrameTimes) -> impl Iterator<Item = usize> + 'a {
-        (0..times.t_s.len()).filter(|&frame| self.holds(times.t_s[frame]) && !times.repeated[frame])
-    }
-
-    /// Refuses a part in which the marker left for good, or was seen too seldom.
-    fn check_seen(
-        &self,
-        path_px: &[Option<[f64; 2]>],
-        times: &FrameTimes,
-    ) -> Result<(), MeasureError> {
-        let frames: Vec<usize> = self.frames(times).collect();
-        let n_seen = frames
-            .iter()
-            .filter(|&&frame| path_px[frame].is_some())
-            .count();
-        let Some(&first_lost) = frames.iter().find(|&&frame| path_px[frame].is_none()) else {
-            return Ok(());
-        };
-        let n_tail = frames
-            .iter()
-            .rev()
-            .take_while(|&&frame| path_px[frame].is_none())
-            .count();
-        let share = |n: usize| to_f64(n) / to_f64(frames.len());
-        if n_seen > 0 && share(n_tail) > LEFT_SHARE {
-            let frame = frames[frames.len() - n_tail];
-            return Err(MeasureError::MarkerLeft {
-                frame,
-                t_s: times.t_s[frame],
-                n_after: n_tail,
-            });
-        }
-        if share(n_seen) < SEEN_SHARE {
-            return Err(MeasureError::MarkerLost {
-                n_seen,
-                n_frames: frames.len(),
-                first_lost,
-            });
-        }
-        Ok(())
-    }
-}
-
-/// Marks rows of a table before `--from` and after `--to`.
-pub(super) fn mark_outside(rows: &mut [RecordRow], run: &FitRun) -> Result<(), MeasureError> {
-    let times = FrameTimes {
-        t_s: rows.iter().map(|row| row.t_s).collect(),
-        repeated: vec![false; rows.len()],
-    };
-    let part = Part::of(run, &times)?;
-    for row in rows
-        .iter_mut()
-        .filter(|row| row.status == RowStatus::Used && !part.holds(row.t_s))
-    {
-        row.status = RowStatus::Outside;
-    }
-    Ok(())
-}
-
-fn ends(t_s: &[f64]) -> (f64, f64) {
-    t_s.iter()
-        .fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), &t_s| {
-            (low.min(t_s), high.max(t_s))
-        })
 }
 
 #[expect(clippy::cast_precision_loss, reason = "numbers of frames and pixels")]

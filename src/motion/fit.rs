@@ -18,7 +18,7 @@ use std::f64::consts::TAU;
 /// The damped sinusoid x(t) = A e^(−γτ) cos(ωτ + φ) + c, τ = t − `t_ref_s`, fitted to a record.
 #[derive(Clone, Debug, PartialEq)]
 pub struct MotionFit {
-    /// Time of the first used position, in s: A and φ hold there.
+    /// Time of the first position of the record, used or not, in s: A and φ hold there.
     pub t_ref_s: f64,
     /// Time of the last used position, in s.
     pub t_end_s: f64,
@@ -69,7 +69,7 @@ impl MotionFit {
     pub fn period_s(&self) -> f64 {
         TAU / self.damped_angular_frequency_rad_per_s
     }
-    /// Time from the first used position to the last, in s.
+    /// Time from the first position to the last used one, in s.
     #[must_use]
     pub fn duration_s(&self) -> f64 {
         self.t_end_s - self.t_ref_s
@@ -106,10 +106,7 @@ pub fn fit(records: &[PositionRecord]) -> Result<MotionFit, MotionError> {
             n_needed: MIN_POSITIONS,
         });
     }
-    let start = majority
-        .sinusoid
-        .counted_from(used.t_ref_s - readings.t_ref_s);
-    let plain = Plain::new(&used, start)
+    let plain = Plain::new(&used, majority.sinusoid)
         .map_err(|error| why_not_fitted(&readings, &starts, error.into()))?;
     let spread = plain.spread()?;
     plain.is_a_motion(&spread)?;

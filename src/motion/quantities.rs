@@ -57,6 +57,8 @@ pub struct ExternalTerms {
     pub u_scale_rel: Option<f64>,
     /// True where a part of the scale's uncertainty is our default.
     pub scale_assumed: bool,
+    /// Longest the shutter can have been open for a frame, s; None where positions are those of an instant.
+    pub longest_exposure_s: Option<f64>,
 }
 
 /// The figures of a motion.
@@ -135,6 +137,24 @@ pub fn quantities(fit: &MotionFit, external: &ExternalTerms) -> MotionQuantities
         centre: ledger.length("centre", fit.centre_m, 4),
         budget: ledger.budget,
     }
+}
+
+/// What the open shutter takes off the amplitude: a marker smeared over a time τ is seen at its mean place, and the amplitude
+/// comes out sin(ωτ/2)/(ωτ/2) ≈ 1 − (ωτ)²/24 times its size.
+///
+/// τ is not known but for its limit, `omega_tau`/ω: the loss lies between 0 and (ωτ)²/24, rectangular, and is not corrected;
+/// its root mean square is limit/√3.
+fn smear_row(key: &'static str, amplitude_m: f64, omega_tau: f64) -> BudgetRow {
+    let limit_rel = omega_tau * omega_tau / 24.0;
+    BudgetRow::new(
+        key,
+        "smear while the shutter is open, at most a frame interval",
+        Evaluation::B,
+        limit_rel / 3.0_f64.sqrt(),
+        "1",
+        amplitude_m,
+    )
+    .assumed(true)
 }
 
 /// The upper end of a one-sided 95 % interval of γ where the two-sided one contains 0, s⁻¹.
@@ -252,6 +272,9 @@ impl Ledger<'_> {
                 value_m,
             );
             rows.push(row.assumed(self.external.scale_assumed));
+        }
+        if let (0, Some(longest_s)) = (index, self.external.longest_exposure_s) {
+            rows.push(smear_row(key, value_m, self.figures.omega * longest_s));
         }
         self.enter(value_m, "m", rows)
     }

@@ -81,22 +81,16 @@ impl Readings {
         )
     }
 
-    /// The readings for which `keep` is true; times count from the first of them, positions from where they did.
+    /// The readings for which `keep` is true; times and positions count from where they did.
     pub(super) fn only(&self, keep: &[bool]) -> Self {
         let pick = |column: &[f64]| {
-            column
-                .iter()
-                .zip(keep)
-                .filter(|(_, k)| **k)
-                .map(|(v, _)| *v)
-                .collect::<Vec<f64>>()
+            let kept = column.iter().zip(keep).filter(|(_, k)| **k);
+            kept.map(|(v, _)| *v).collect::<Vec<f64>>()
         };
-        let tau_s = pick(&self.tau_s);
-        let first = tau_s.first().copied().unwrap_or(0.0);
         Self {
-            t_ref_s: self.t_ref_s + first,
+            t_ref_s: self.t_ref_s,
             x_ref_m: self.x_ref_m,
-            tau_s: tau_s.iter().map(|tau| tau - first).collect(),
+            tau_s: pick(&self.tau_s),
             x_m: pick(&self.x_m),
             u_x_m: pick(&self.u_x_m),
             u_t_s: pick(&self.u_t_s),

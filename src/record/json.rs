@@ -10,7 +10,7 @@ use serde_json::{Map, Value, json};
 use self::film::{axis, clip, frames, scale};
 use super::quantities::named;
 use crate::measurement::{EnergyFigures, FilmPart, Measurement};
-use crate::motion::{LawTrial, ResidualDiagnosis};
+use crate::motion::{LawTrial, MotionFit, ResidualDiagnosis};
 use crate::uncertainty::{BudgetRow, Evaluation, Quantity};
 use crate::verdict::Verdict;
 
@@ -60,6 +60,7 @@ pub fn result_json(measurement: &Measurement) -> Value {
     if let Some(energy) = energy {
         put("energy", energies(energy));
     }
+    put("fit", fit_facts(fit));
     put("budget", quantities.budget.iter().map(budget_row).collect());
     put("residual", residual(&fit.residual, film));
     put("laws", fit.laws.iter().map(law).collect());
@@ -84,6 +85,16 @@ pub fn result_json(measurement: &Measurement) -> Value {
         json!({"program": "ebbmark", "version": env!("CARGO_PKG_VERSION"), "clip_sha256": source_sha256, "sheet": sheet_toml}),
     );
     Value::Object(result)
+}
+
+/// What it takes to draw the fitted curve: the reference time at which amplitude and phase hold, and the part it covers.
+fn fit_facts(fit: &MotionFit) -> Value {
+    json!({
+        "t_ref_s": number(fit.t_ref_s),
+        "t_end_s": number(fit.t_end_s),
+        "phase_rad": number(fit.phase_rad),
+        "degrees_of_freedom": number(fit.degrees_of_freedom),
+    })
 }
 
 /// [`result_json`] as text: indented, with a newline at the end.

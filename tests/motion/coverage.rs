@@ -42,6 +42,7 @@ fn simulate(zeta: f64, cycles: f64, lag1: f64) -> Outcome {
         clock_assumed: false,
         u_scale_rel: None,
         scale_assumed: false,
+        longest_exposure_s: None,
     };
     for trial in 0..TRIALS {
         let seed =

@@ -10,6 +10,7 @@ const NO_TERMS: ExternalTerms = ExternalTerms {
     clock_assumed: false,
     u_scale_rel: None,
     scale_assumed: false,
+    longest_exposure_s: None,
 };
 
 fn record_of(x_m: impl Fn(f64) -> f64, rate_hz: f64, n: u32) -> Vec<PositionRecord> {
@@ -187,6 +188,7 @@ fn a_loss_that_shows_excludes_the_lossless_law_and_clock_and_scale_enter_where_t
         clock_assumed: true,
         u_scale_rel: Some(2e-3),
         scale_assumed: false,
+        longest_exposure_s: None,
     };
     let (bare, full) = (quantities(&fit, &NO_TERMS), quantities(&fit, &terms));
     let u = |quantity: &ebbmark::uncertainty::Quantity| quantity.u.expect("a figure");
@@ -409,4 +411,37 @@ fn dry_friction_and_viscous_loss_are_told_apart() {
         "d = {} ± {u}",
         friction.1
     );
+}
+
+/// Dry friction is not the fitted law; what the law misses must not be thrown out as wild readings, whatever the weights.
+#[test]
+fn what_the_law_misses_is_no_outlier_but_a_wild_reading_still_is() {
+    let (omega, friction_m, amplitude_m) = (5.984, 0.0006, 0.06);
+    let mut records: Vec<PositionRecord> = (0..900)
+        .map(|k| {
+            let t_s = f64::from(k) / 60.0;
+            // Half cycles about shifted centres: the turning point loses 2 F/k each time.
+            let half = (omega * t_s / std::f64::consts::PI).floor();
+            let sign = if half % 2.0 == 0.0 { 1.0 } else { -1.0 };
+            let reach_m = amplitude_m - (2.0 * half + 1.0) * friction_m;
+            let x_m = sign * friction_m + reach_m * (omega * t_s).cos();
+            let u_x_m = if k % 7 == 0 { 1.5e-6 } else { 6e-6 };
+            let error_m = u_x_m * (f64::from(k) * 2.399).sin();
+            PositionRecord {
+                t_s,
+                u_t_s: 0.0,
+                x_m: x_m + error_m,
+                u_x_m,
+            }
+        })
+        .collect();
+    let clean = fit(&records).expect("a fit");
+    assert!(clean.uses.iter().all(|of| *of == PositionUse::Used));
+    records[300].x_m += 0.004;
+    records[899].x_m -= 0.004;
+    let marked = fit(&records).expect("a fit");
+    let outliers: Vec<usize> = (0..900)
+        .filter(|&k| marked.uses[k] == PositionUse::Outlier)
+        .collect();
+    assert_eq!(outliers, [300, 899]);
 }

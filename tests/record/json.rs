@@ -34,6 +34,7 @@ fn the_keys_stand_in_the_order_of_the_contract() {
     let mut wanted = vec!["schema", "clip", "frames", "scale", "axis"];
     wanted.extend(QUANTITY_KEYS);
     wanted.extend([
+        "fit",
         "budget",
         "residual",
         "laws",
