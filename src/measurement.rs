@@ -13,7 +13,8 @@ mod warnings;
 
 pub use error::{Fault, MeasureError};
 pub use parts::{
-    EnergyFigures, FilmPart, Measurement, RecordRow, RowStatus, ScaleFacts, Still, Streak, Warning,
+    EnergyFigures, FilmPart, FrameSlip, Measurement, RecordRow, RowStatus, ScaleFacts, Still,
+    Streak, Warning,
 };
 
 use crate::footage::{Footage, Limits};
@@ -50,7 +51,7 @@ pub fn measure(
     let film = film::Film::new(&run, bar, footage.facts(), track, clip)?;
     let mut rows = film.rows(&run)?;
     let part = fit_rows(&mut rows, &run.fit, Some(film.terms()))?;
-    let film_part = film.into_part(facts, &run, &rows);
+    let film_part = film.into_part(facts, &run, &rows, &part.slips, part.doubtful_phase);
     part.into_measurement(
         &sheet.with_source(&film_part.clip.file_name),
         Some(film_part),
@@ -77,6 +78,8 @@ pub fn refit(table: &Path, sheet: &RunSheet) -> Result<Measurement, MeasureError
 
 /// What fitting gives, film or table.
 struct FittedPart {
+    slips: Vec<FrameSlip>,
+    doubtful_phase: bool,
     fit: motion::MotionFit,
     quantities: motion::MotionQuantities,
     cycles: Vec<motion::Cycle>,
@@ -98,7 +101,9 @@ fn fit_rows(
         .iter()
         .filter_map(|&at| record(&rows[at]))
         .collect();
-    let fit = motion::fit(&records)?;
+    let search = look_for_slips(&records, film.as_ref())?;
+    let slips = move_rows(rows, &taking_part, &search, film.as_ref());
+    let (fit, records) = (search.fit, search.records);
     for (at, &row) in taking_part.iter().enumerate() {
         let row = &mut rows[row];
         row.fit_m = Some(fit.fit_m[at]);
@@ -119,6 +124,8 @@ fn fit_rows(
     let verdicts = verdict::verdicts(&fit, &quantities);
     let energy = energy::figures(&quantities, run);
     Ok(FittedPart {
+        slips,
+        doubtful_phase: search.doubtful,
         fit,
         quantities,
         cycles,
@@ -126,6 +133,49 @@ fn fit_rows(
         verdicts,
         run: run.clone(),
     })
+}
+
+/// Fits a record; on a film whose stamps are even, frames that are missing behind them are looked for first.
+fn look_for_slips(
+    records: &[PositionRecord],
+    film: Option<&film::FilmTerms>,
+) -> Result<motion::SlipSearch, MeasureError> {
+    match film {
+        Some(film) if film.even_stamps => {
+            Ok(motion::fit_with_slips(records, film.frame_interval_s)?)
+        }
+        _ => {
+            let fit = motion::fit(records)?;
+            Ok(motion::SlipSearch {
+                slips: Vec::new(),
+                doubtful: false,
+                records: records.to_vec(),
+                fit,
+            })
+        }
+    }
+}
+
+/// Moves the times of all rows behind each slip, and names its frame.
+fn move_rows(
+    rows: &mut [RecordRow],
+    taking_part: &[usize],
+    search: &motion::SlipSearch,
+    film: Option<&film::FilmTerms>,
+) -> Vec<FrameSlip> {
+    let interval_s = film.map_or(0.0, |film| film.frame_interval_s);
+    let named = search.slips.iter().map(|slip| {
+        let row = taking_part[slip.at];
+        for row in &mut rows[row..] {
+            row.t_s += f64::from(slip.n_frames) * interval_s;
+        }
+        FrameSlip {
+            before_frame: row,
+            n_frames: slip.n_frames,
+            estimate_frames: slip.estimate_frames,
+        }
+    });
+    named.collect()
 }
 
 /// The row as the fit takes it; None where it has no position.
@@ -146,6 +196,8 @@ impl FittedPart {
         rows: Vec<RecordRow>,
     ) -> Result<Measurement, MeasureError> {
         let Self {
+            slips: _,
+            doubtful_phase: _,
             fit,
             quantities,
             cycles,

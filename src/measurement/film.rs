@@ -1,7 +1,7 @@
 //! From the track of a film to rows of the position–time record.
 
 use super::part::{self, Part};
-use super::{FilmPart, MeasureError, RecordRow, RowStatus, ScaleFacts, Streak, still};
+use super::{FilmPart, FrameSlip, MeasureError, RecordRow, RowStatus, ScaleFacts, Streak, still};
 use crate::footage::{
     CaptureRate, ClipFacts, Footage, FootageError, FrameClock, FrameTimes, Orientation,
     StreamFacts, frame_clock, time_scale,
@@ -127,6 +127,8 @@ pub(super) struct FilmTerms {
     pub(super) scale_assumed: bool,
     /// Time from frame to frame, s of capture time.
     pub(super) frame_interval_s: f64,
+    /// True where the stamps are even: then lost frames leave no trace in them.
+    pub(super) even_stamps: bool,
 }
 
 /// A film whose marker was followed, with its times, its axis and its scale.
@@ -194,6 +196,7 @@ impl Film {
             u_scale_rel: self.scale.bar.u_rel(),
             scale_assumed: self.scale.bar.assumed(),
             frame_interval_s: self.clock.interval_s * self.clock.time_scale,
+            even_stamps: self.clock.steady,
         }
     }
 
@@ -265,7 +268,14 @@ impl Film {
     }
 
     /// What only a film has, for the record.
-    pub(super) fn into_part(self, clip: ClipFacts, run: &FilmRun, rows: &[RecordRow]) -> FilmPart {
+    pub(super) fn into_part(
+        self,
+        clip: ClipFacts,
+        run: &FilmRun,
+        rows: &[RecordRow],
+        slips: &[FrameSlip],
+        doubtful_phase: bool,
+    ) -> FilmPart {
         let bar = &self.scale.bar;
         let scale = ScaleFacts {
             bar_px: bar.ends_px(),
@@ -293,6 +303,8 @@ impl Film {
             streak: self.streak(rows),
             n_unsteady: self.n_unsteady,
             capture_rate: self.capture_rate,
+            slips: slips.to_vec(),
+            doubtful_phase,
             frame_clock: self.clock,
             clip,
         }

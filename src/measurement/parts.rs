@@ -123,6 +123,21 @@ pub struct FilmPart {
     pub n_unsteady: usize,
     /// Where the rate of capture was taken from.
     pub capture_rate: CaptureRate,
+    /// Frames that are missing behind even stamps; the times of the record allow for them.
+    pub slips: Vec<FrameSlip>,
+    /// True where the phase of the motion steps, but not by whole frame intervals: nothing was changed.
+    pub doubtful_phase: bool,
+}
+
+/// A place where frames are missing though the stamps are even.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct FrameSlip {
+    /// First frame behind the gap.
+    pub before_frame: usize,
+    /// Frames missing (negative: frames too many).
+    pub n_frames: i32,
+    /// The same as estimated from the motion.
+    pub estimate_frames: f64,
 }
 
 /// Energies, where the mass is known.

@@ -154,6 +154,24 @@ fn film_warnings(
 /// What the stamps and the rate of capture leave to be said.
 fn time_warnings(film: &FilmPart, warn: &mut dyn FnMut(&'static str, bool, String)) {
     let clock = &film.frame_clock;
+    let places: Vec<String> = film
+        .slips
+        .iter()
+        .map(|slip| format!("{} before frame {}", slip.n_frames, slip.before_frame))
+        .collect();
+    warn(
+        "frames_slipped",
+        !places.is_empty(),
+        format!(
+            "The phase of the motion steps by whole frame intervals though the stamps are even: frames are missing ({}). The times behind them were moved accordingly.",
+            places.join(", ")
+        ),
+    );
+    warn(
+        "phase_steps",
+        film.doubtful_phase,
+        "The phase of the motion steps or bends, but not by whole frame intervals: the glider may have been touched, or the period may change with amplitude. Nothing was corrected; the period is that of the whole part, and --from and --to choose another.".to_owned(),
+    );
     if let CaptureRate::FromMetadata(rate_hz, key) = &film.capture_rate {
         warn(
             "slow_motion",

@@ -18,6 +18,7 @@ mod refusal;
 mod relations;
 mod robust;
 mod sinusoid;
+mod slips;
 
 pub use cycles::{Cycle, cycles};
 pub use error::MotionError;
@@ -28,3 +29,4 @@ pub use position::{PositionRecord, PositionUse};
 pub use quantities::{ExternalTerms, MotionQuantities, quantities};
 pub use refusal::MIN_CYCLES;
 pub use relations::period_shift_s;
+pub use slips::{Slip, SlipSearch, fit_with_slips};

@@ -280,3 +280,43 @@ fn dropped_frames_and_rounded_stamps_do_not_move_the_period() {
         assert!((off / truth.law.damped_period_s).abs() < 100e-6, "{name}");
     }
 }
+
+/// Ordinary phone files lose frames without a trace in their stamps.
+#[test]
+fn frames_lost_behind_even_stamps_are_found_and_do_not_move_the_period() {
+    let bench = Bench::new();
+    let lost = [(
+        "[scale_bar]",
+        "[mishap]\nslip_frames = [37, 90, 141]\n\n[scale_bar]",
+    )];
+    let truth = bench.film("slips.mp4", &small_with(&lost));
+    bench
+        .run(measure(
+            "slips.mp4",
+            &truth,
+            &["--clock-ppm", "0", "--quiet"],
+        ))
+        .succeeds();
+    let result = bench.json("slips.ebbmark/result.json");
+    let slips = result["frames"]["slips"].as_array().unwrap();
+    let total: i64 = slips
+        .iter()
+        .map(|slip| slip["n_frames"].as_i64().unwrap())
+        .sum();
+    assert_eq!((slips.len(), total), (3, 3), "{slips:?}");
+    for key in ["period", "damping_ratio"] {
+        let wanted = if key == "period" {
+            truth.law.damped_period_s
+        } else {
+            truth.law.damping_ratio
+        };
+        let (off, expanded) = compare(&result, key, wanted);
+        assert!(off.abs() < 1.5 * expanded, "{key}");
+    }
+    let warned = result["warnings"]
+        .as_array()
+        .unwrap()
+        .iter()
+        .any(|warning| warning["key"] == "frames_slipped");
+    assert!(warned, "a correction must be said");
+}

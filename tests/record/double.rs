@@ -248,6 +248,8 @@ impl Double {
             streak: streak(rows),
             n_unsteady: 0,
             capture_rate: CaptureRate::AsStamped,
+            slips: Vec::new(),
+            doubtful_phase: false,
         }
     }
 

@@ -4,7 +4,7 @@ use serde_json::{Value, json};
 
 use super::{number, numbers};
 use crate::footage::{ClipFacts, FrameClock};
-use crate::measurement::{FilmPart, Measurement, RowStatus, ScaleFacts};
+use crate::measurement::{FilmPart, FrameSlip, Measurement, RowStatus, ScaleFacts};
 
 /// Facts of the stream.
 pub(super) fn clip(clip: &ClipFacts) -> Value {
@@ -61,9 +61,20 @@ pub(super) fn frames(measurement: &Measurement) -> Value {
         "n_damaged": film.map_or(0, |film| film.clip.n_damaged),
         "n_interlaced": film.map_or(0, |film| film.clip.n_interlaced),
         "n_promised": film.and_then(|film| film.clip.n_frames_promised),
+        "slips": film.map_or_else(Vec::new, |film| film.slips.iter().map(slip).collect()),
+        "doubtful_phase": film.is_some_and(|film| film.doubtful_phase),
         "n_unsteady": film.map_or(0, |film| film.n_unsteady),
         "clock": film.map(|film| frame_clock(&film.frame_clock)),
     })
+}
+
+fn slip(slip: &FrameSlip) -> Value {
+    let FrameSlip {
+        before_frame,
+        n_frames,
+        estimate_frames,
+    } = slip;
+    json!({"before_frame": before_frame, "n_frames": n_frames, "estimate_frames": number(*estimate_frames)})
 }
 
 fn frame_clock(clock: &FrameClock) -> Value {

@@ -1,0 +1,470 @@
+//! Frames that are missing without a trace in the stamps.
+//!
+//! A phone may lose frames and stamp the rest as if nothing had happened. The stamps stay even, and the phase of the motion steps by a
+//! whole number of frame intervals. In: a record on an even clock, and its frame interval. Out: where the steps are, and the record with
+//! its times put right; or that there is something of the kind that is no whole number, and then nothing is changed.
+//!
+//! Method: the residual of the fitted motion is regressed on a step of the time, v(t)·H(t − s), beside the five parameters, for every
+//! place s at once by running sums; the best place is taken into the regression, until none stands out, and each is then placed anew
+//! beside the others. The times are moved by the nearest whole numbers of intervals, the motion is fitted anew, and what is left of each
+//! step must be next to nothing.
+
+use super::fit::{MotionFit, fit};
+use super::{MotionError, PositionRecord, PositionUse};
+use nalgebra::{DMatrix, DVector};
+use std::f64::consts::TAU;
+
+/// A place where frames are missing behind even stamps.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Slip {
+    /// Index of the first record behind the gap.
+    pub at: usize,
+    /// Frames missing there (negative: frames too many).
+    pub n_frames: i32,
+    /// The same as estimated from the motion, before it was brought to a whole number.
+    pub estimate_frames: f64,
+}
+
+/// A record whose times were looked through for slips.
+#[derive(Clone, Debug, PartialEq)]
+pub struct SlipSearch {
+    /// The slips, in order of time; empty where there are none, or none that are certain.
+    pub slips: Vec<Slip>,
+    /// True where the phase steps, but not by whole frame intervals throughout: nothing was changed.
+    pub doubtful: bool,
+    /// The record, its times moved behind each slip.
+    pub records: Vec<PositionRecord>,
+    /// The motion fitted to it.
+    pub fit: MotionFit,
+}
+
+/// Slips that are looked for at the most: more would be another kind of clock.
+const MOST_SLIPS: usize = 12;
+/// Rounds of regression, rounding and fitting.
+const MOST_ROUNDS: usize = 8;
+/// A step that takes off less than this part of what the best one did is left to the next round.
+const MINOR_SHARE: f64 = 0.05;
+/// Smallest step that is taken up, in frames. Evenly spaced slips look like a slower motion, and each by itself like a third of a frame.
+const LEAST_FRAMES: f64 = 0.15;
+/// Standard scores a step must stand out by. Noise alone reaches 5 in no place of a million.
+const LEAST_SCORE: f64 = 8.0;
+/// Largest standard uncertainty of a step, in frames, at which it can be told from its neighbours.
+const MOST_U_FRAMES: f64 = 0.07;
+/// Largest distance of an estimate from a whole number, in frames.
+const WHOLE_WITHIN_FRAMES: f64 = 0.2;
+/// Phase left in a cycle after the correction, in frames, rms: beyond it the steps do not explain the phase (a spring that stiffens
+/// bends it smoothly, and steps would only imitate the bend).
+const MOST_LEFT_FRAMES: f64 = 0.1;
+
+/// Looks for slips in a record on an even clock, puts the times right where they are certain, and fits the motion.
+///
+/// * `frame_interval_s`: time from frame to frame, s, > 0.
+///
+/// # Errors
+/// Those of [`fit`].
+pub fn fit_with_slips(
+    records: &[PositionRecord],
+    frame_interval_s: f64,
+) -> Result<SlipSearch, MotionError> {
+    let plain = fit(records)?;
+    let unchanged = |doubtful: bool| SlipSearch {
+        slips: Vec::new(),
+        doubtful,
+        records: records.to_vec(),
+        fit: plain.clone(),
+    };
+    let mut moved = records.to_vec();
+    let mut motion = plain.clone();
+    let mut places: Vec<(usize, i32)> = Vec::new();
+    // Around the first, wrong fit the regression is linear only roughly: what it leaves is looked through again.
+    for _ in 0..MOST_ROUNDS {
+        let Some(steps) = Regression::of(&moved, &motion, frame_interval_s).map(|r| r.steps())
+        else {
+            break;
+        };
+        let whole: Vec<(usize, i32)> = steps
+            .iter()
+            .map(|step| (step.at, nearest_whole(step.frames)))
+            .collect();
+        if whole.iter().all(|(_, n_frames)| *n_frames == 0) {
+            if places.is_empty() {
+                return Ok(unchanged(!steps.is_empty()));
+            }
+            break;
+        }
+        for &(at, n_frames) in &whole {
+            shift(&mut moved, at, n_frames, frame_interval_s);
+        }
+        places.extend(whole);
+        let forwards = moved.windows(2).all(|pair| pair[1].t_s > pair[0].t_s);
+        match fit(&moved) {
+            Ok(next) if forwards => motion = next,
+            _ => return Ok(unchanged(true)),
+        }
+    }
+    let places = merged(places);
+    match certain(&moved, &motion, &places, frame_interval_s) {
+        Some(slips) => Ok(SlipSearch {
+            slips,
+            doubtful: false,
+            records: moved,
+            fit: motion,
+        }),
+        None => Ok(unchanged(!places.is_empty())),
+    }
+}
+
+/// Moves the times from a place on by whole frame intervals.
+fn shift(records: &mut [PositionRecord], at: usize, n_frames: i32, frame_interval_s: f64) {
+    for record in &mut records[at..] {
+        record.t_s += f64::from(n_frames) * frame_interval_s;
+    }
+}
+
+/// Places in order of time, those that came out twice added up, those that cancelled left out.
+fn merged(mut places: Vec<(usize, i32)>) -> Vec<(usize, i32)> {
+    places.sort_unstable();
+    let mut list: Vec<(usize, i32)> = Vec::new();
+    for (at, n_frames) in places {
+        match list.last_mut() {
+            Some(last) if last.0 == at => last.1 += n_frames,
+            _ => list.push((at, n_frames)),
+        }
+    }
+    list.retain(|(_, n_frames)| *n_frames != 0);
+    list
+}
+
+/// The slips, if every one is a whole number of frames and together they explain the phase.
+fn certain(
+    moved: &[PositionRecord],
+    motion: &MotionFit,
+    places: &[(usize, i32)],
+    frame_interval_s: f64,
+) -> Option<Vec<Slip>> {
+    let regression = Regression::of(moved, motion, frame_interval_s)?;
+    let at: Vec<usize> = places.iter().map(|(at, _)| *at).collect();
+    let rests = regression.estimates(&at)?;
+    let slips: Vec<Slip> = places
+        .iter()
+        .zip(rests)
+        .map(|(&(at, n_frames), rest)| Slip {
+            at,
+            n_frames,
+            estimate_frames: f64::from(n_frames) + rest,
+        })
+        .collect();
+    let whole = slips
+        .iter()
+        .all(|slip| (slip.estimate_frames - f64::from(slip.n_frames)).abs() <= WHOLE_WITHIN_FRAMES);
+    (whole && regression.phase_left_frames(motion) <= MOST_LEFT_FRAMES).then_some(slips)
+}
+
+/// A step of the time at a place.
+#[derive(Clone, Copy)]
+struct Step {
+    /// Index in the record.
+    at: usize,
+    frames: f64,
+}
+
+/// What the regressions on steps have in common: the used readings, the motion's slopes there, and what is left over.
+struct Regression {
+    /// Index of each used reading in the record.
+    index: Vec<usize>,
+    t_s: Vec<f64>,
+    residual_m: DVector<f64>,
+    /// Change of the position for a step of one frame, m.
+    per_frame_m: Vec<f64>,
+    /// Five columns.
+    slopes: DMatrix<f64>,
+    /// Noise of a reading, m.
+    sigma_m: f64,
+}
+
+impl Regression {
+    fn of(records: &[PositionRecord], motion: &MotionFit, frame_interval_s: f64) -> Option<Self> {
+        let index: Vec<usize> = (0..records.len())
+            .filter(|&at| motion.uses[at] == PositionUse::Used)
+            .collect();
+        let t_s: Vec<f64> = index.iter().map(|&at| records[at].t_s).collect();
+        let rows: Vec<[f64; 5]> = t_s.iter().map(|&t_s| slopes(motion, t_s)).collect();
+        let slopes = DMatrix::from_fn(rows.len(), 5, |row, column| rows[row][column]);
+        let per_frame_m = t_s
+            .iter()
+            .map(|&t_s| velocity_m_per_s(motion, t_s) * frame_interval_s)
+            .collect();
+        let residual_m: Vec<f64> = index.iter().map(|&at| motion.residual_m[at]).collect();
+        let sigma_m = noise_m(&residual_m);
+        let residual_m = DVector::from_vec(residual_m);
+        (sigma_m > 0.0).then_some(Self {
+            index,
+            t_s,
+            residual_m,
+            per_frame_m,
+            slopes,
+            sigma_m,
+        })
+    }
+
+    /// The steps that stand out, found one after another, then each placed anew beside the others; in no order.
+    fn steps(&self) -> Vec<Step> {
+        let mut places: Vec<usize> = Vec::new();
+        let mut most = 0.0_f64;
+        while places.len() < MOST_SLIPS {
+            let Some((gain, place)) = self.best_place(&places) else {
+                break;
+            };
+            // A large step bends what it leaves; that is looked at in the next round, when it has been taken off.
+            if gain < MINOR_SHARE * most {
+                break;
+            }
+            most = most.max(gain);
+            places.push(place);
+        }
+        for at in (0..places.len()).chain(0..places.len()) {
+            let place = places.remove(at);
+            let anew = self.best_place(&places).map_or(place, |(_, place)| place);
+            places.insert(at, anew);
+        }
+        let frames = self.estimates(&places).unwrap_or_default();
+        places
+            .into_iter()
+            .zip(frames)
+            .map(|(at, frames)| Step { at, frames })
+            .collect()
+    }
+
+    /// Columns of the five slopes and of a step at each place.
+    fn design(&self, places: &[usize]) -> DMatrix<f64> {
+        DMatrix::from_fn(
+            self.t_s.len(),
+            5 + places.len(),
+            |row, column| match column {
+                0..5 => self.slopes[(row, column)],
+                _ if self.index[row] >= places[column - 5] => self.per_frame_m[row],
+                _ => 0.0,
+            },
+        )
+    }
+
+    /// How much a further step takes off the sum of squares, and its place, where it takes most; None where none stands out or is known
+    /// well enough.
+    fn best_place(&self, places: &[usize]) -> Option<(f64, usize)> {
+        let basis = self.design(places).qr().q();
+        let rest = &self.residual_m - &basis * (basis.transpose() * &self.residual_m);
+        let (mut with_rest, mut square) = (0.0, 0.0);
+        let mut with_basis = DVector::zeros(basis.ncols());
+        let mut best: Option<(f64, usize)> = None;
+        for at in (1..self.t_s.len()).rev() {
+            let h = self.per_frame_m[at];
+            with_rest += h * rest[at];
+            square += h * h;
+            with_basis += h * basis.row(at).transpose();
+            // What of the step the other columns cannot take up.
+            let free = square - with_basis.norm_squared();
+            if free <= (self.sigma_m / MOST_U_FRAMES).powi(2) || places.contains(&self.index[at]) {
+                continue;
+            }
+            let gain = with_rest * with_rest / free;
+            let frames = (with_rest / free).abs();
+            let stands_out = frames >= LEAST_FRAMES && gain.sqrt() >= LEAST_SCORE * self.sigma_m;
+            if stands_out && best.is_none_or(|(other, _)| gain > other) {
+                best = Some((gain, self.index[at]));
+            }
+        }
+        best
+    }
+
+    /// The step at each place, in frames, all estimated together; None where they cannot be told apart.
+    fn estimates(&self, places: &[usize]) -> Option<Vec<f64>> {
+        let design = self.design(places);
+        // Columns to unit length: amplitudes and rates differ by orders of magnitude.
+        let scale = DVector::from_fn(design.ncols(), |column, _| {
+            design.column(column).norm().recip()
+        });
+        let scaled = &design * DMatrix::from_diagonal(&scale);
+        let normal = (scaled.transpose() * &scaled).cholesky()?;
+        let solution = normal.solve(&(scaled.transpose() * &self.residual_m));
+        let inverse = normal.inverse();
+        let steps = 5..design.ncols();
+        let u_frames = |at: usize| inverse[(at, at)].sqrt() * scale[at] * self.sigma_m;
+        let known = steps.clone().all(|at| u_frames(at) <= 2.0 * MOST_U_FRAMES);
+        known.then(|| steps.map(|at| solution[at] * scale[at]).collect())
+    }
+
+    /// Phase left over, cycle by cycle, in frames, rms.
+    fn phase_left_frames(&self, motion: &MotionFit) -> f64 {
+        let period_s = TAU / motion.damped_angular_frequency_rad_per_s;
+        let (mut sum, mut n, mut from) = (0.0, 0.0, 0);
+        while from < self.t_s.len() {
+            let end_s = self.t_s[from] + period_s;
+            let to = from + self.t_s[from..].partition_point(|&t_s| t_s < end_s).max(1);
+            let product: f64 = (from..to)
+                .map(|at| self.per_frame_m[at] * self.residual_m[at])
+                .sum();
+            let square: f64 = self.per_frame_m[from..to].iter().map(|h| h * h).sum();
+            if square > 0.0 {
+                sum += (product / square).powi(2);
+                n += 1.0;
+            }
+            from = to;
+        }
+        if n > 0.0 {
+            f64::sqrt(sum / n)
+        } else {
+            f64::INFINITY
+        }
+    }
+}
+
+/// ∂x/∂(A, φ, γ, ω, c).
+fn slopes(motion: &MotionFit, t_s: f64) -> [f64; 5] {
+    let tau = t_s - motion.t_ref_s;
+    let envelope_m = motion.envelope_m(t_s);
+    let (sin, cos) = (motion.damped_angular_frequency_rad_per_s * tau + motion.phase_rad).sin_cos();
+    let e = envelope_m / motion.amplitude_m;
+    [
+        e * cos,
+        -envelope_m * sin,
+        -tau * envelope_m * cos,
+        -tau * envelope_m * sin,
+        1.0,
+    ]
+}
+
+fn velocity_m_per_s(motion: &MotionFit, t_s: f64) -> f64 {
+    let tau = t_s - motion.t_ref_s;
+    let omega = motion.damped_angular_frequency_rad_per_s;
+    let (sin, cos) = (omega * tau + motion.phase_rad).sin_cos();
+    -motion.envelope_m(t_s) * (motion.decay_rate_per_s * cos + omega * sin)
+}
+
+/// Noise of a reading from third differences, whose variance is 20 times a reading's: neither a step of the phase nor a law that
+/// does not fit gets into the median of them.
+fn noise_m(residual_m: &[f64]) -> f64 {
+    let mut third: Vec<f64> = residual_m
+        .windows(4)
+        .map(|r| (r[3] - 3.0 * r[2] + 3.0 * r[1] - r[0]).abs())
+        .collect();
+    third.sort_by(f64::total_cmp);
+    let median = third.get(third.len() / 2).copied().unwrap_or(f64::INFINITY);
+    median / 0.6745 / 20.0_f64.sqrt()
+}
+
+#[expect(
+    clippy::cast_possible_truncation,
+    reason = "`as` saturates, and a step of 2³¹ frames is none"
+)]
+fn nearest_whole(frames: f64) -> i32 {
+    frames.round() as i32
+}
+
+#[cfg(test)]
+#[allow(clippy::expect_used, reason = "a failed expectation is a failed test")]
+mod tests {
+    use super::*;
+
+    const INTERVAL_S: f64 = 1.0 / 60.0;
+
+    /// A record at 60 Hz of 15 s with frames lost behind even stamps: (first frame behind the gap, number lost).
+    fn record(
+        lost: &[(usize, i32)],
+        x_m: impl Fn(f64) -> f64,
+        noise_m: f64,
+    ) -> Vec<PositionRecord> {
+        let mut state = 12_345_u64;
+        let mut uniform = || {
+            state = state
+                .wrapping_mul(6_364_136_223_846_793_005)
+                .wrapping_add(1);
+            (state >> 11) as f64 / (1_u64 << 53) as f64 - 0.5
+        };
+        (0..900)
+            .map(|k| {
+                let behind: i32 = lost.iter().filter(|(at, _)| k >= *at).map(|(_, n)| n).sum();
+                let t_true = (k as f64 + f64::from(behind)) * INTERVAL_S;
+                // Sum of twelve uniforms: a Gaussian good to three standard deviations.
+                let error: f64 = (0..12).map(|_| uniform()).sum();
+                PositionRecord {
+                    t_s: k as f64 * INTERVAL_S,
+                    u_t_s: 0.0,
+                    x_m: x_m(t_true) + noise_m * error,
+                    u_x_m: 1e-5,
+                }
+            })
+            .collect()
+    }
+
+    fn swing(t_s: f64) -> f64 {
+        0.1 * (-0.02 * t_s).exp() * (4.8 * t_s + 0.4).cos()
+    }
+
+    #[test]
+    fn lost_frames_are_found_counted_and_put_right() {
+        for lost in [
+            vec![(211, 1)],
+            vec![(211, 1), (480, 1), (702, 1)],
+            vec![(100, 2), (110, 1), (850, 4)],
+            vec![(300, 1), (303, 1)],
+        ] {
+            let search = fit_with_slips(&record(&lost, swing, 1e-5), INTERVAL_S).expect("a fit");
+            let found: i32 = search.slips.iter().map(|slip| slip.n_frames).sum();
+            assert_eq!(
+                found,
+                lost.iter().map(|(_, n)| n).sum::<i32>(),
+                "{lost:?}: {:?}",
+                search.slips
+            );
+            assert!(!search.doubtful);
+            let omega = search.fit.damped_angular_frequency_rad_per_s;
+            assert!((omega / 4.8 - 1.0).abs() < 5e-6, "{lost:?}: {omega}");
+        }
+    }
+
+    /// No clip of a hundred may be changed: here are a hundred without slips.
+    #[test]
+    fn noise_alone_is_no_slip() {
+        for seed in 0..100 {
+            let phase = 0.37 * f64::from(seed);
+            let noise_m = 1e-6 * 10_f64.powi(seed % 4);
+            let records = record(
+                &[],
+                |t_s| 0.1 * (-0.02 * t_s).exp() * (4.8 * t_s + phase).cos(),
+                noise_m,
+            );
+            let search = fit_with_slips(&records, INTERVAL_S).expect("a fit");
+            assert!(
+                search.slips.is_empty() && !search.doubtful,
+                "{seed}: {:?}",
+                search.slips
+            );
+        }
+    }
+
+    #[test]
+    fn a_spring_that_stiffens_is_no_slip() {
+        // The frequency falls with the square of the amplitude: the phase bends by several frames, smoothly.
+        let bent = |t_s: f64| {
+            let turned = 4.8 * t_s + 0.03 * 4.8 * (1.0 - (-0.08 * t_s).exp()) / 0.08;
+            0.1 * (-0.04 * t_s).exp() * turned.cos()
+        };
+        let search = fit_with_slips(&record(&[], bent, 1e-5), INTERVAL_S).expect("a fit");
+        assert!(search.slips.is_empty(), "{:?}", search.slips);
+    }
+
+    #[test]
+    fn a_step_of_half_a_frame_is_doubtful_and_nothing_is_changed() {
+        let kicked = |t_s: f64| {
+            swing(if t_s > 7.0 {
+                t_s + 1.45 * INTERVAL_S
+            } else {
+                t_s
+            })
+        };
+        let records = record(&[], kicked, 1e-5);
+        let search = fit_with_slips(&records, INTERVAL_S).expect("a fit");
+        assert!(search.doubtful && search.slips.is_empty());
+        assert_eq!(search.records, records);
+    }
+}
