@@ -4,7 +4,7 @@
 //! whole number of frame intervals. In: a record on an even clock, and its frame interval. Out: where the steps are, and the record with
 //! its times put right; or that there is something of the kind that is no whole number, and then nothing is changed.
 //!
-//! Method: the residual of the fitted motion is regressed on a step of the time, v(t)·H(t − s), beside the five parameters, for every
+//! Method: the residual of the fitted motion is regressed on a step of the time, v(t)·H(t − s), beside the motion's own parameters, for every
 //! place s at once by running sums; the best place is taken into the regression, until none stands out, and each is then placed anew
 //! beside the others. The times are moved by the nearest whole numbers of intervals, the motion is fitted anew, and what is left of each
 //! step must be next to nothing.
@@ -176,7 +176,7 @@ struct Regression {
     residual_m: DVector<f64>,
     /// Change of the position for a step of one frame, m.
     per_frame_m: Vec<f64>,
-    /// Five columns.
+    /// One row a reading, [`N_SLOPES`] columns.
     slopes: DMatrix<f64>,
     /// Noise of a reading, m.
     sigma_m: f64,
@@ -188,8 +188,8 @@ impl Regression {
             .filter(|&at| motion.uses[at] == PositionUse::Used)
             .collect();
         let t_s: Vec<f64> = index.iter().map(|&at| records[at].t_s).collect();
-        let rows: Vec<[f64; 5]> = t_s.iter().map(|&t_s| slopes(motion, t_s)).collect();
-        let slopes = DMatrix::from_fn(rows.len(), 5, |row, column| rows[row][column]);
+        let rows: Vec<[f64; N_SLOPES]> = t_s.iter().map(|&t_s| slopes(motion, t_s)).collect();
+        let slopes = DMatrix::from_fn(rows.len(), N_SLOPES, |row, column| rows[row][column]);
         let per_frame_m = t_s
             .iter()
             .map(|&t_s| velocity_m_per_s(motion, t_s) * frame_interval_s)
@@ -235,17 +235,17 @@ impl Regression {
             .collect()
     }
 
-    /// Columns of the five slopes and of a step at each place.
+    /// Columns of the slopes and of a step at each place.
     fn design(&self, places: &[usize]) -> DMatrix<f64> {
-        DMatrix::from_fn(
-            self.t_s.len(),
-            5 + places.len(),
-            |row, column| match column {
-                0..5 => self.slopes[(row, column)],
-                _ if self.index[row] >= places[column - 5] => self.per_frame_m[row],
-                _ => 0.0,
-            },
-        )
+        DMatrix::from_fn(self.t_s.len(), N_SLOPES + places.len(), |row, column| {
+            if column < N_SLOPES {
+                self.slopes[(row, column)]
+            } else if self.index[row] >= places[column - N_SLOPES] {
+                self.per_frame_m[row]
+            } else {
+                0.0
+            }
+        })
     }
 
     /// How much a further step takes off the sum of squares, and its place, where it takes most; None where none stands out or is known
@@ -287,7 +287,7 @@ impl Regression {
         let normal = (scaled.transpose() * &scaled).cholesky()?;
         let solution = normal.solve(&(scaled.transpose() * &self.residual_m));
         let inverse = normal.inverse();
-        let steps = 5..design.ncols();
+        let steps = N_SLOPES..design.ncols();
         let u_frames = |at: usize| inverse[(at, at)].sqrt() * scale[at] * self.sigma_m;
         let known = steps.clone().all(|at| u_frames(at) <= 2.0 * MOST_U_FRAMES);
         known.then(|| steps.map(|at| solution[at] * scale[at]).collect())
@@ -318,18 +318,28 @@ impl Regression {
     }
 }
 
-/// ∂x/∂(A, φ, γ, ω, c).
-fn slopes(motion: &MotionFit, t_s: f64) -> [f64; 5] {
+/// Columns beside the steps: ∂x/∂(A, φ, γ, ω, c), and the amplitude's course in three powers of time more.
+///
+/// A law of loss that does not fit bends the amplitude, smoothly; without these columns steps of the time would imitate that.
+const N_SLOPES: usize = 8;
+
+fn slopes(motion: &MotionFit, t_s: f64) -> [f64; N_SLOPES] {
     let tau = t_s - motion.t_ref_s;
     let envelope_m = motion.envelope_m(t_s);
     let (sin, cos) = (motion.damped_angular_frequency_rad_per_s * tau + motion.phase_rad).sin_cos();
-    let e = envelope_m / motion.amplitude_m;
+    // Legendre's polynomials over the record: powers of time would be nearly the same column five times.
+    let u = 2.0 * tau / motion.duration_s() - 1.0;
+    let (u2, u3) = (u * u, u * u * u);
+    let in_phase = |polynomial: f64| envelope_m * cos * polynomial;
     [
-        e * cos,
+        in_phase(1.0),
         -envelope_m * sin,
-        -tau * envelope_m * cos,
+        in_phase(u),
         -tau * envelope_m * sin,
         1.0,
+        in_phase(1.5 * u2 - 0.5),
+        in_phase(2.5 * u3 - 1.5 * u),
+        in_phase((35.0 * u2 * u2 - 30.0 * u2 + 3.0) / 8.0),
     ]
 }
 
