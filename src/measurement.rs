@@ -17,12 +17,11 @@ pub use parts::{
     Streak, Warning,
 };
 
-use crate::footage::{Footage, Limits};
 use crate::motion::{self, ExternalTerms, PositionRecord, PositionUse};
 use crate::run_sheet::{FitRun, RunSheet};
 use crate::scale::ScaleBar;
 use crate::uncertainty::Quantity;
-use crate::{track, verdict};
+use crate::verdict;
 use std::path::Path;
 
 /// Measures a film.
@@ -38,15 +37,12 @@ pub fn measure(
 ) -> Result<Measurement, MeasureError> {
     let run = sheet.film_run()?;
     let bar = ScaleBar::new(run.bar_px, run.length_m, run.u_length_m, run.u_end_px)?;
-    let mut footage = Footage::open(clip, Limits::default())?;
-    let plan = film::plan(&run, footage.facts())?;
-    let n_promised = footage.facts().n_frames_promised;
     let (walked, sha256) = std::thread::scope(|scope| {
         let sum = scope.spawn(|| film::sha256(clip));
-        let walked = track::walk(&mut footage, &plan, &mut |n| progress(n, n_promised));
+        let walked = film::walk(clip, &run, progress);
         (walked, sum.join())
     });
-    let track = walked?;
+    let (track, footage) = walked?;
     let facts = film::clip_facts(&footage, clip, &track, sha256)?;
     let film = film::Film::new(&run, bar, footage.facts(), track, clip)?;
     let mut rows = film.rows(&run)?;

@@ -158,18 +158,30 @@ fn loss_shifts_period(fit: &MotionFit, quantities: &MotionQuantities) -> Verdict
                 "The record follows dry friction and rules viscous loss out; dry friction does not move the period (viscous loss of this size would by {shift}, against the {against} (k = 2) to which it is known)."
             ),
         )
+    } else if fit.decay_rate_interval95_per_s[1] < 0.0 {
+        (
+            Answer::Undecided,
+            "The amplitude grows, so that there is no loss to shift the period; find what drives the motion, and film it free.".to_owned(),
+        )
+    } else if fit.laws.iter().all(|law| law.excluded) {
+        (
+            Answer::Undecided,
+            format!(
+                "None of the laws of loss tried describes this motion, so that what the loss does to the period cannot be told; viscous loss of this size would make it {shift} longer, and it is known to {against} (k = 2) at best. Mend what the warnings name, or film smaller swings."
+            ),
+        )
     } else if low > expanded_s {
         (
             Answer::Yes,
             format!(
-                "Viscous loss makes the period {shift} longer than without loss (95 % interval {from} to {to}), more than the {against} (k = 2) to which it is known; dry friction of the same size would not move it."
+                "Viscous loss makes the period {shift} longer than without loss (95 % interval {from} to {to}), more than the {against} (k = 2) to which the period is known; dry friction of the same size would not move it."
             ),
         )
     } else if high < expanded_s {
         (
             Answer::No,
             format!(
-                "Viscous loss would make the period at most {} longer, less than the {against} (k = 2) to which it is known, so that loss does not matter to it; dry friction would not move it at all.",
+                "Viscous loss would make the period at most {} longer, and the period is known to {against} (k = 2): the loss does not matter to it. Dry friction would not move it at all.",
                 prefixed(high, "s", 2)
             ),
         )

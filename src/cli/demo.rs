@@ -31,7 +31,17 @@ pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
     let folder = arguments.out.join("rail-7.ebbmark");
     record::create_folder(&arguments.out)?;
     record::check_destination(&folder)?;
-    record::write_file(&clip, CLIP)?;
+    let same = std::fs::metadata(&clip).map(|facts| facts.len() == CLIP.len() as u64);
+    match same {
+        Ok(false) => {
+            let folder = arguments.out.display();
+            return Err(Failure::usage(format!(
+                "{folder}: holds a {CLIP_NAME} of your own; choose another --out"
+            )));
+        }
+        Ok(true) => {}
+        Err(_) => record::write_file(&clip, CLIP)?,
+    }
     let sheet = RunSheet::from_toml(SHEET).map_err(crate::measurement::MeasureError::from)?;
     let measurement = {
         let bar = Progress::new(arguments.quiet);

@@ -12,7 +12,7 @@ pub(super) struct FitArguments {
     /// End of the part that is fitted, s of the film's own time
     #[arg(long, value_name = "S", value_parser = one, allow_hyphen_values = true)]
     to: Option<f64>,
-    /// Limit of error of the clock's rate, ppm (rectangular)
+    /// How wrong the phone's clock may run, ± ppm (rectangular) [default: 50, said to be assumed]
     #[arg(long, value_name = "U", value_parser = one, allow_hyphen_values = true)]
     clock_ppm: Option<f64>,
     /// Moving mass, kg, for stiffness and energies

@@ -5,7 +5,7 @@ use super::numbers::{four, one};
 use super::outcome::Failure;
 use super::output::OutputArguments;
 use super::progress::Progress;
-use super::{refit, repeat};
+use super::{refit, repeat, small_text};
 use crate::measurement::measure;
 use crate::record;
 use crate::run_sheet::RunSheet;
@@ -17,28 +17,29 @@ pub(super) struct Arguments {
     /// The film, or a run sheet (.toml) that names one
     #[arg(value_name = "CLIP|RUN.toml")]
     source: PathBuf,
-    /// Box around the marker in the start frame: left, top, width, height, display px
+    /// Box around the marker in the start frame (needed for a clip; `ebbmark inspect CLIP --stills DIR` shows where): left,
+    /// top, width, height, display px
     #[arg(long, value_name = "X,Y,W,H", value_parser = four, allow_hyphen_values = true)]
     marker: Option<[f64; 4]>,
-    /// The two ends of a bar of known length, display px
+    /// The two ends of a bar of known length (needed for a clip), display px
     #[arg(long, value_name = "X1,Y1,X2,Y2", value_parser = four, allow_hyphen_values = true)]
     scale_bar: Option<[f64; 4]>,
-    /// Length of the bar, m
+    /// Length of the bar in metres (needed for a clip): 0.5, not 500
     #[arg(long, value_name = "METRES", value_parser = one, allow_hyphen_values = true)]
     length: Option<f64>,
-    /// Standard uncertainty of the length, m
+    /// Standard uncertainty of the length, m [default: 0.29 mm, said to be assumed]
     #[arg(long, value_name = "METRES", value_parser = one, allow_hyphen_values = true)]
     length_u: Option<f64>,
-    /// Standard uncertainty of reading one end of the bar, px
+    /// Standard uncertainty of reading one end of the bar, px [default: 0.58, said to be assumed]
     #[arg(long, value_name = "PX", value_parser = one, allow_hyphen_values = true)]
     end_u: Option<f64>,
-    /// Frame the boxes were drawn in, from 0
+    /// Frame the boxes were drawn in, from 0 [default: 0]
     #[arg(long, value_name = "N", allow_hyphen_values = true)]
     at_frame: Option<usize>,
     /// A patch that stands still, to take camera shake off
     #[arg(long, value_name = "X,Y,W,H", value_parser = four, allow_hyphen_values = true)]
     steady: Option<[f64; 4]>,
-    /// Rate the frames were captured at, for slow motion
+    /// Rate the frames were captured at, for slow motion [default: what the file says]
     #[arg(long, value_name = "HZ", value_parser = one, allow_hyphen_values = true)]
     capture_rate: Option<f64>,
     /// Time the sensor takes from a picture's first row to its last, ms
@@ -82,6 +83,15 @@ fn sheet_of(source: &Path) -> Result<(RunSheet, PathBuf), Failure> {
         .extension()
         .is_none_or(|extension| !extension.eq_ignore_ascii_case("toml"))
     {
+        if source
+            .extension()
+            .is_some_and(|extension| extension.eq_ignore_ascii_case("csv"))
+        {
+            return Err(Failure::usage(format!(
+                "{}: this is a table; use `ebbmark refit`",
+                source.display()
+            )));
+        }
         let Some(clip) = source.to_str() else {
             return Err(Failure::input(format!(
                 "{}: the file's name is not valid UTF-8; rename the clip",
@@ -90,12 +100,7 @@ fn sheet_of(source: &Path) -> Result<(RunSheet, PathBuf), Failure> {
         };
         return Ok((RunSheet::default().with_source(clip), PathBuf::new()));
     }
-    let text = std::fs::read_to_string(source).map_err(|error| {
-        Failure::input(format!(
-            "{}: the run sheet cannot be read ({error}); check its name",
-            source.display()
-        ))
-    })?;
+    let text = small_text::read(source, "run sheet")?;
     let sheet = RunSheet::from_toml(&text)
         .map_err(|error| Failure::usage(format!("{}: {error}", source.display())))?;
     Ok((

@@ -14,6 +14,7 @@ mod progress;
 mod refit;
 mod rehearse;
 mod repeat;
+mod small_text;
 
 use clap::{CommandFactory, FromArgMatches, Parser, Subcommand};
 use outcome::Failure;
@@ -40,11 +41,11 @@ enum Verb {
     Measure(Box<measure::Arguments>),
     /// Say what a clip is: stream, frame clock, still frames with a pixel grid
     Inspect(inspect::Arguments),
-    /// The same fit and verdicts from a table of positions and times
+    /// Fit and judge a table of positions and times
     Refit(refit::Arguments),
     /// Make a film with known truth from a scene
     Rehearse(rehearse::Arguments),
-    /// Do the main job on the clip inside this program
+    /// Measure the clip inside this program, to see what comes out
     Demo(demo::Arguments),
 }
 

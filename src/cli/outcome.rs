@@ -5,6 +5,7 @@
     reason = "the command line is where words leave the program"
 )]
 
+use crate::footage::FootageError;
 use crate::measurement::{Fault, MeasureError};
 use crate::record::RecordError;
 use std::io::Write;
@@ -24,6 +25,30 @@ pub(super) enum Failure {
     Shown(String),
     /// The reader of stdout went away: a normal end.
     PipeClosed,
+    /// The film is damaged and must be decoded with patience: no end, but a second beginning.
+    Damaged,
+}
+
+/// Longest sentence that is printed, characters: names and fields of a hostile file may have any length.
+const MOST_CHARACTERS: usize = 700;
+
+/// A sentence on one line: control characters, which could steer a terminal, become their escapes.
+fn on_one_line(sentence: &str) -> String {
+    let mut line: String = sentence
+        .chars()
+        .take(MOST_CHARACTERS)
+        .flat_map(|c| {
+            if c.is_control() {
+                c.escape_default().collect::<Vec<_>>()
+            } else {
+                vec![c]
+            }
+        })
+        .collect();
+    if sentence.chars().count() > MOST_CHARACTERS {
+        line.push('…');
+    }
+    line
 }
 
 impl Failure {
@@ -84,7 +109,7 @@ impl Failure {
         match self {
             Self::Said { sentence, code } => {
                 // A closed stderr leaves nobody to tell.
-                let _ = writeln!(std::io::stderr(), "ebbmark: {sentence}");
+                let _ = writeln!(std::io::stderr(), "ebbmark: {}", on_one_line(&sentence));
                 ExitCode::from(code)
             }
             Self::Shown(text) => {
@@ -92,6 +117,8 @@ impl Failure {
                 ExitCode::SUCCESS
             }
             Self::PipeClosed => ExitCode::SUCCESS,
+            // Whoever decodes catches it; should it come this far, it is the input's fault.
+            Self::Damaged => ExitCode::from(3),
         }
     }
 }
@@ -101,6 +128,15 @@ impl From<MeasureError> for Failure {
         Self::Said {
             sentence: error.to_string(),
             code: code(&error),
+        }
+    }
+}
+
+impl From<FootageError> for Failure {
+    fn from(error: FootageError) -> Self {
+        match error {
+            FootageError::Damaged { .. } => Self::Damaged,
+            error => MeasureError::from(error).into(),
         }
     }
 }

@@ -8,7 +8,7 @@ use std::path::{Path, PathBuf};
 /// Where results go and what is said.
 #[derive(Debug, clap::Args)]
 pub(super) struct OutputArguments {
-    /// Folder for the results [default: the clip's name with .ebbmark, in the current folder]
+    /// Folder for the results [default: the clip's or table's name with .ebbmark, in the current folder]
     #[arg(long, value_name = "DIR")]
     out: Option<PathBuf>,
     /// Print result.json to stdout, and nothing else there

@@ -1,8 +1,9 @@
 //! `ebbmark rehearse SCENE.toml --out CLIP`
 
 use super::outcome::{Failure, print};
+use super::small_text;
 use crate::rehearsal::{RehearsalError, Scene, rehearse};
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 
 /// What was typed after `rehearse`.
 #[derive(Debug, clap::Args)]
@@ -29,13 +30,9 @@ pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
             _ => Failure::input(sentence),
         }
     };
-    let text = std::fs::read_to_string(&arguments.scene).map_err(|error| {
-        Failure::input(format!(
-            "{}: the scene cannot be read ({error}); check its name",
-            arguments.scene.display()
-        ))
-    })?;
+    let text = small_text::read(&arguments.scene, "scene")?;
     let scene = Scene::from_toml(&text).map_err(place)?;
+    refuse_to_replace_footage(&arguments.out)?;
     rehearse(&scene, &arguments.out).map_err(place)?;
     if arguments.quiet {
         return Ok(());
@@ -46,4 +43,15 @@ pub(super) fn run(arguments: &Arguments) -> Result<(), Failure> {
         arguments.out.display(),
         truth.display()
     ))
+}
+
+/// A film with a truth beside it is a rehearsal and may be made anew; any other was filmed by somebody.
+fn refuse_to_replace_footage(clip: &Path) -> Result<(), Failure> {
+    if clip.exists() && !clip.with_extension("truth.json").exists() {
+        return Err(Failure::usage(format!(
+            "{}: a film stands there that is no rehearsal (no truth.json beside it); choose another --out",
+            clip.display()
+        )));
+    }
+    Ok(())
 }

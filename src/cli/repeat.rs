@@ -40,7 +40,13 @@ fn relative(file: &Path, folder: &Path) -> Result<String, Failure> {
         .unwrap_or(Path::new("."));
     let mut from = std::fs::canonicalize(parent).map_err(|error| unknown(parent, error))?;
     from.extend(folder.file_name());
-    Ok(way(&from, &file).to_string_lossy().replace('\\', "/"))
+    let way = way(&from, &file).to_string_lossy().into_owned();
+    // Elsewhere a backslash is a letter like others.
+    Ok(if cfg!(windows) {
+        way.replace('\\', "/")
+    } else {
+        way
+    })
 }
 
 /// The way between two absolute paths; the second itself where they share no root.

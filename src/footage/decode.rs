@@ -2,7 +2,7 @@
 
 use super::luma::{LumaView, Sample};
 use super::open::{OpenClip, open};
-use super::{FootageError, Limits, StreamFacts, raw};
+use super::{Damage, FootageError, Limits, StreamFacts, raw};
 use ffmpeg_next::software::scaling;
 use ffmpeg_next::{Error, Packet, Rescale, format, frame, picture};
 use std::path::Path;
@@ -148,6 +148,13 @@ impl Footage {
         }
     }
 
+    fn damage_met(&self) -> FootageError {
+        FootageError::Damaged {
+            path: self.clip.path.clone(),
+            frame: self.n_frames,
+        }
+    }
+
     fn check_picture(&self) -> Result<(), FootageError> {
         let [width, height] = self.clip.facts.orientation.coded_size_px();
         if (self.picture.width(), self.picture.height()) != (width, height) {
@@ -229,7 +236,12 @@ impl FrameSource for Footage {
     }
 
     fn next_frame(&mut self) -> Result<Option<Frame<'_>>, FootageError> {
-        if !self.decode_next() {
+        let n_damaged = self.n_damaged;
+        let more = self.decode_next();
+        if self.n_damaged > n_damaged && self.limits.damage == Damage::Stop {
+            return Err(self.damage_met());
+        }
+        if !more {
             return Ok(None);
         }
         self.check_picture()?;
@@ -240,6 +252,9 @@ impl FrameSource for Footage {
         let index = self.n_frames;
         self.n_frames += 1;
         let damaged = self.picture.is_corrupt() || self.picture.has_decode_errors();
+        if damaged && self.limits.damage == Damage::Stop {
+            return Err(self.damage_met());
+        }
         self.n_damaged += usize::from(damaged);
         let source = if in_place.is_some() {
             &self.picture

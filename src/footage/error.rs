@@ -96,13 +96,19 @@ pub enum FootageError {
         /// The path asked for.
         path: PathBuf,
     },
+    /// A packet or picture is damaged, and the limits say to stop there.
+    #[error("{}: frame {frame} is damaged; decode it with one thread to patch it up", path.display())]
+    Damaged {
+        /// The path asked for.
+        path: PathBuf,
+        /// Frame number, from 0, of the first that could not be had.
+        frame: usize,
+    },
     /// No picture came out of the decoder.
-    #[error("{}: not one picture could be decoded ({n_damaged} damaged packets); copy the clip again", path.display())]
+    #[error("{}: not one picture could be decoded; the film is damaged or empty: copy the clip again", path.display())]
     NoPictures {
         /// The path asked for.
         path: PathBuf,
-        /// Packets or pictures the decoder reported as damaged.
-        n_damaged: usize,
     },
     /// The film is longer than the limit.
     #[error("{}: more than {limit} frames; cut the clip to the oscillation", path.display())]

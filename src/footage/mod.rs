@@ -12,6 +12,7 @@ mod grid;
 mod luma;
 mod open;
 mod orientation;
+mod patience;
 mod raw;
 
 pub use capture_rate::{CaptureRate, capture_rate_from_metadata, time_scale};
@@ -20,5 +21,6 @@ pub use error::FootageError;
 pub use facts::{ClipFacts, StreamFacts};
 pub use frame_clock::{FrameClock, FrameTimes, frame_clock};
 pub use luma::{GreyPicture, LumaCopy, LumaView};
-pub use open::Limits;
+pub use open::{Damage, Limits};
 pub use orientation::Orientation;
+pub use patience::with_patience;

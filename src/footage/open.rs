@@ -17,16 +17,31 @@ pub struct Limits {
     pub max_frames: usize,
     /// Decoder threads; 0 takes one for each processor.
     pub threads: usize,
+    /// What is done at damage.
+    pub damage: Damage,
+}
+
+/// What is done where a packet or a picture is damaged.
+///
+/// A patched picture made by several threads depends on which of them was faster, and with it every picture that refers to it. So damage
+/// is only looked for while several threads decode, and patched by one.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Damage {
+    /// [`FootageError::Damaged`] at the first: decode again with [`Damage::Patch`].
+    Stop,
+    /// One thread whatever `threads` says; damaged pictures are patched up, marked and counted.
+    Patch,
 }
 
 impl Default for Limits {
-    /// 64 GiB, 8192 × 8192 px, 500 000 frames (more than two hours at 60 Hz), a thread for each processor.
+    /// 64 GiB, 8192 × 8192 px, 500 000 frames (more than two hours at 60 Hz), a thread for each processor, stop at damage.
     fn default() -> Self {
         Self {
             max_bytes: 64 << 30,
             max_picture_px: 8192 * 8192,
             max_frames: 500_000,
             threads: 0,
+            damage: Damage::Stop,
         }
     }
 }
@@ -44,6 +59,8 @@ pub(super) struct OpenClip {
 pub(super) fn open(path: &Path, limits: &Limits) -> Result<OpenClip, FootageError> {
     let absolute = check_file(path, limits)?;
     let path = path.to_path_buf();
+    // Registers the words of FFmpeg's errors; it cannot fail with the parts that are used here.
+    let _ = ffmpeg_next::init();
     // Messages of FFmpeg's own would stand between ours on stderr; what matters comes back as an error or a count.
     ffmpeg_next::log::set_level(ffmpeg_next::log::Level::Quiet);
     let not_a_film = |error: ffmpeg_next::Error| FootageError::NotAFilm {
@@ -59,6 +76,12 @@ pub(super) fn open(path: &Path, limits: &Limits) -> Result<OpenClip, FootageErro
         let stream = input
             .streams()
             .best(media::Type::Video)
+            // The cover of a piece of music is a picture, not a film.
+            .filter(|stream| {
+                !stream
+                    .disposition()
+                    .contains(format::stream::Disposition::ATTACHED_PIC)
+            })
             .ok_or_else(|| FootageError::NoVideo { path: path.clone() })?;
         let decoder = open_decoder(&stream, limits, &path)?;
         let orientation = orientation(&stream, &decoder)
@@ -122,6 +145,10 @@ fn open_decoder(
     context.set_packet_time_base(stream.time_base());
     let mut options = Dictionary::new();
     options.set("max_pixels", &limits.max_picture_px.to_string());
+    if limits.damage == Damage::Stop {
+        // Without this a decoder patches in silence, and tells of it too late to be relied on.
+        options.set("err_detect", "explode");
+    }
     let decoder = context
         .open_as_with(found, options)
         .and_then(decoder::Opened::video)
@@ -148,6 +175,7 @@ const FORMATS: &str = "mov,mp4,m4a,3gp,3g2,mj2,matroska,webm,avi,mpegts,mpeg,mpe
 
 fn thread_count(limits: &Limits) -> usize {
     match limits.threads {
+        _ if limits.damage == Damage::Patch => 1,
         0 => std::thread::available_parallelism()
             .map_or(1, usize::from)
             .min(16),

@@ -75,9 +75,7 @@ pub enum MeasureError {
         first_lost: usize,
     },
     /// No frame lies between `--from` and `--to`.
-    #[error(
-        "no frame lies between {from_s} s and {to_s} s; the film runs from {first_s:.2} s to {last_s:.2} s"
-    )]
+    #[error("no reading lies in the part asked for ({}); the record runs from {first_s:.2} s to {last_s:.2} s, choose --from and --to within it", part_in_words(*from_s, *to_s))]
     EmptyPart {
         /// Start of the part asked for, s.
         from_s: f64,
@@ -87,6 +85,16 @@ pub enum MeasureError {
         first_s: f64,
         /// Time of the last frame, s.
         last_s: f64,
+    },
+    /// A readout that would last longer than a frame.
+    #[error(
+        "a readout of {readout_ms} ms cannot be: the frames are {interval_ms:.2} ms apart; give the time from the first row of a picture to its last, such as 12"
+    )]
+    Readout {
+        /// The readout given, ms.
+        readout_ms: f64,
+        /// Time from frame to frame, ms of capture time.
+        interval_ms: f64,
     },
     /// A table of positions cannot be read.
     #[error("{}: {reason}", path.display())]
@@ -98,12 +106,29 @@ pub enum MeasureError {
     },
 }
 
+/// A part in words; an end that is infinite was not given.
+fn part_in_words(from_s: f64, to_s: f64) -> String {
+    match (from_s.is_finite(), to_s.is_finite()) {
+        (true, true) => format!("{from_s} s to {to_s} s"),
+        (true, false) => format!("from {from_s} s on"),
+        _ => format!("up to {to_s} s"),
+    }
+}
+
 impl MeasureError {
     /// Whose fault it is.
     #[must_use]
     pub fn fault(&self) -> Fault {
         match self {
-            Self::Sheet(_) | Self::Bar(_) | Self::EmptyPart { .. } => Fault::Usage,
+            Self::Sheet(_) | Self::Bar(_) | Self::EmptyPart { .. } | Self::Readout { .. } => {
+                Fault::Usage
+            }
+            Self::Motion(
+                MotionError::NotFinite { .. }
+                | MotionError::UnusableUncertainty { .. }
+                | MotionError::TimeNotIncreasing { .. }
+                | MotionError::AbsurdSpan { .. },
+            ) => Fault::Input,
             Self::Footage(FootageError::CaptureRate { .. }) => Fault::Usage,
             Self::Footage(_) | Self::Table { .. } => Fault::Input,
             Self::Track(error) => track_fault(error),

@@ -3,12 +3,12 @@
 use super::part::{self, Part};
 use super::{FilmPart, FrameSlip, MeasureError, RecordRow, RowStatus, ScaleFacts, Streak, still};
 use crate::footage::{
-    CaptureRate, ClipFacts, Footage, FootageError, FrameClock, FrameTimes, Orientation,
-    StreamFacts, frame_clock, time_scale,
+    CaptureRate, ClipFacts, Footage, FootageError, FrameClock, FrameTimes, Limits, Orientation,
+    StreamFacts, frame_clock, time_scale, with_patience,
 };
 use crate::run_sheet::FilmRun;
 use crate::scale::{ScaleAxis, ScaleBar, motion_axis};
-use crate::track::{FilmTrack, PixelBox, Plan, Sighting, TrackError};
+use crate::track::{self, FilmTrack, PixelBox, Plan, Sighting, TrackError};
 use sha2::{Digest, Sha256};
 use std::path::Path;
 
@@ -23,8 +23,38 @@ pub(super) fn sha256(path: &Path) -> std::io::Result<String> {
         .collect())
 }
 
+/// Walks through a film; where it is damaged once more, with patience.
+pub(super) fn walk(
+    clip: &Path,
+    run: &FilmRun,
+    progress: &mut dyn FnMut(usize, Option<usize>),
+) -> Result<(FilmTrack, Footage), MeasureError> {
+    let work = |footage: &mut Footage| {
+        let plan = plan(run, footage.facts())?;
+        let n_promised = footage.facts().n_frames_promised;
+        Ok(track::walk(footage, &plan, &mut |n| {
+            progress(n, n_promised)
+        })?)
+    };
+    let damaged = |error: &MeasureError| {
+        matches!(
+            error,
+            MeasureError::Track(TrackError::Footage(FootageError::Damaged { .. }))
+        )
+    };
+    match with_patience(clip, Limits::default(), work, damaged) {
+        Err(MeasureError::Track(TrackError::NoSuchFrame { n_frames: 0, .. })) => {
+            Err(FootageError::NoPictures {
+                path: clip.to_path_buf(),
+            }
+            .into())
+        }
+        other => other,
+    }
+}
+
 /// What to follow, in coded pixels.
-pub(super) fn plan(run: &FilmRun, facts: &StreamFacts) -> Result<Plan, MeasureError> {
+fn plan(run: &FilmRun, facts: &StreamFacts) -> Result<Plan, MeasureError> {
     let orientation = &facts.orientation;
     let [[x1, y1], [x2, y2]] = run.bar_px;
     let marker = coded_box(run.marker_box_px, orientation, "marker")?;
@@ -156,7 +186,6 @@ impl Film {
         if track.notes.is_empty() {
             return Err(FootageError::NoPictures {
                 path: clip.to_path_buf(),
-                n_damaged: 0,
             }
             .into());
         }
@@ -169,6 +198,14 @@ impl Film {
         )?;
         clock.time_scale = stretch;
         clock.u_t_s *= stretch;
+        let interval_s = clock.interval_s * stretch;
+        if let Some(readout_s) = run.readout_s.filter(|&readout_s| readout_s > interval_s) {
+            let (readout_ms, interval_ms) = (readout_s * 1e3, interval_s * 1e3);
+            return Err(MeasureError::Readout {
+                readout_ms,
+                interval_ms,
+            });
+        }
         let (path_px, n_unsteady) = display_path(&track, &facts.orientation);
         let part = Part::of(&run.fit, &times)?;
         let seen: Vec<[f64; 2]> = part
@@ -302,12 +339,27 @@ impl Film {
             ),
             streak: self.streak(rows),
             n_unsteady: self.n_unsteady,
+            rows_swept_rel: self.rows_swept_rel(),
             capture_rate: self.capture_rate,
+            readout_given: run.readout_s.is_some(),
             slips: slips.to_vec(),
             doubtful_phase,
             frame_clock: self.clock,
             clip,
         }
+    }
+
+    /// Share of the sensor's rows over which the marker moves: nine tenths of the sightings, so that a stray does not count.
+    fn rows_swept_rel(&self) -> f64 {
+        let seen = self
+            .track
+            .marker
+            .iter()
+            .filter_map(|outcome| outcome.seen());
+        let mut rows: Vec<f64> = seen.map(|sighting| sighting.p_px[1]).collect();
+        rows.sort_by(f64::total_cmp);
+        let at = |share: usize| rows.get(rows.len() * share / 100).copied().unwrap_or(0.0);
+        (at(95) - at(5)) / f64::from(self.orientation.coded_size_px()[1])
     }
 
     /// The lines nearer to the axis, with positions counted along the axis from its origin.

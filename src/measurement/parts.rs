@@ -123,6 +123,10 @@ pub struct FilmPart {
     pub n_unsteady: usize,
     /// Where the rate of capture was taken from.
     pub capture_rate: CaptureRate,
+    /// Share of the sensor's rows over which the marker moves.
+    pub rows_swept_rel: f64,
+    /// True where the readout of the sensor was given and the times allow for it.
+    pub readout_given: bool,
     /// Frames that are missing behind even stamps; the times of the record allow for them.
     pub slips: Vec<FrameSlip>,
     /// True where the phase of the motion steps, but not by whole frame intervals: nothing was changed.

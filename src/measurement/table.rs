@@ -84,12 +84,24 @@ fn rows(bytes: &[u8]) -> Result<Vec<RecordRow>, String> {
         let line = record.position().map_or(0, csv::Position::line);
         rows.push(row(&record, rows.len(), line, &columns)?);
     }
+    fill_missing_u(&mut rows);
     if rows.is_empty() {
         return Err(
             "holds no rows below its header; give a table of positions and times".to_owned(),
         );
     }
     Ok(rows)
+}
+
+/// A row without an uncertainty among rows with one weighs like the median of them.
+fn fill_missing_u(rows: &mut [RecordRow]) {
+    let mut known: Vec<f64> = rows.iter().filter_map(|row| row.u_x_m).collect();
+    known.sort_by(f64::total_cmp);
+    if let Some(&median) = known.get(known.len() / 2) {
+        for row in rows.iter_mut().filter(|row| row.x_m.is_some()) {
+            row.u_x_m.get_or_insert(median);
+        }
+    }
 }
 
 fn row(

@@ -10,6 +10,10 @@ const FEW_CYCLES: f64 = 5.0;
 const MANY_OUTLIERS_SHARE: f64 = 0.01;
 /// Enlargement of the variance beyond which the law, the lens or the clock is more likely at fault than the noise.
 const STRUCTURED_ENLARGEMENT: f64 = 20.0;
+/// Lag-1 autocorrelation from which the same is said: at few frames a cycle the enlargement cannot grow large.
+const STRUCTURED_LAG1: f64 = 0.7;
+/// Share of the sensor's rows a marker may sweep before the order in which they are read shows.
+const ROWS_SWEPT_REL: f64 = 0.05;
 /// Angle between bar and axis beyond which they see the lens and the perspective differently, rad.
 const BAR_ANGLE_RAD: f64 = 0.09;
 /// Motion off the axis, as a share of the amplitude, that a straight rail does not explain.
@@ -29,10 +33,11 @@ pub(super) fn warnings(measurement: &Measurement, run: &FitRun) -> Vec<Warning> 
     let residual = &fit.residual;
     warn(
         "residuals_structured",
-        residual.variance_enlargement > STRUCTURED_ENLARGEMENT,
+        residual.variance_enlargement > STRUCTURED_ENLARGEMENT
+            || residual.autocorrelation_lag1 > STRUCTURED_LAG1,
         format!(
-            "The residuals carry motion of their own near the period (variance {:.0} times that of independent errors; the uncertainties were enlarged for it): the loss may not be viscous, frames may be missing behind even time stamps, or the lens may bend the scale.",
-            residual.variance_enlargement
+            "What the fit leaves over is not noise (lag-1 autocorrelation {:.2}, variance near the period {:.0} times that of independent errors; the uncertainties were enlarged for it): the loss may not be viscous, the spring not straight, the camera not still, or the lens may bend the scale.",
+            residual.autocorrelation_lag1, residual.variance_enlargement
         ),
     );
     let n_outliers = count(measurement, RowStatus::Outlier);
@@ -47,7 +52,7 @@ pub(super) fn warnings(measurement: &Measurement, run: &FitRun) -> Vec<Warning> 
         "few_cycles",
         n_cycles < FEW_CYCLES,
         format!(
-            "Only {n_cycles:.1} cycles were filmed; film at least ten for a loss that can be told from drift."
+            "Only {n_cycles:.1} cycles were used; film at least ten for a loss that can be told from drift."
         ),
     );
     if let Some(film) = &measurement.film {
@@ -123,7 +128,25 @@ fn film_warnings(
         ),
     );
     time_warnings(film, warn);
+    scale_warnings(film, measurement, warn);
+}
+
+/// What the way of the marker over the picture and the bar leave to be said.
+fn scale_warnings(
+    film: &FilmPart,
+    measurement: &Measurement,
+    warn: &mut dyn FnMut(&'static str, bool, String),
+) {
     let scale = &film.scale;
+    let sweep_rel = film.rows_swept_rel;
+    warn(
+        "rolling_shutter",
+        !film.readout_given && sweep_rel > ROWS_SWEPT_REL,
+        format!(
+            "The marker runs over {:.0} % of the sensor's rows, which most phones read one after another: that bends the record (a second harmonic, a change of amplitude) but not the mean period; give --readout-ms, or turn the phone so that the motion runs along the rows.",
+            100.0 * sweep_rel
+        ),
+    );
     warn(
         "off_axis_motion",
         scale.off_axis_rms_m > OFF_AXIS_SHARE * measurement.fit.amplitude_m,
@@ -170,7 +193,7 @@ fn time_warnings(film: &FilmPart, warn: &mut dyn FnMut(&'static str, bool, Strin
     warn(
         "phase_steps",
         film.doubtful_phase,
-        "The phase of the motion steps or bends, but not by whole frame intervals: the glider may have been touched, or the period may change with amplitude. Nothing was corrected; the period is that of the whole part, and --from and --to choose another.".to_owned(),
+        "The phase is not that of one steady oscillation: it steps or bends by a part of a frame interval. A touch, a spring that stiffens, drag, or a rolling shutter can do that. Nothing was corrected; choose an undisturbed part with --from and --to.".to_owned(),
     );
     if let CaptureRate::FromMetadata(rate_hz, key) = &film.capture_rate {
         warn(
@@ -178,6 +201,17 @@ fn time_warnings(film: &FilmPart, warn: &mut dyn FnMut(&'static str, bool, Strin
             true,
             format!(
                 "The file says it was captured at {rate_hz} Hz ({key}); times were multiplied by {:.6}. Give --capture-rate if that is wrong.",
+                clock.time_scale
+            ),
+        );
+    }
+    if let CaptureRate::Given(rate_hz) = &film.capture_rate {
+        warn(
+            "capture_rate_given",
+            (clock.time_scale - 1.0).abs() > 1e-6,
+            format!(
+                "The stamps run at {:.4} Hz and the capture rate was given as {rate_hz} Hz: times were multiplied by {:.6}.",
+                1.0 / clock.interval_s,
                 clock.time_scale
             ),
         );

@@ -47,6 +47,18 @@ pub enum MotionError {
         /// The time before it, s.
         previous_s: f64,
     },
+    /// Times or positions of a size no experiment has.
+    #[error(
+        "{quantity} span {span:e} {unit}, which no record of a motion does; check the units of the table"
+    )]
+    AbsurdSpan {
+        /// `the times` or `the positions`.
+        quantity: &'static str,
+        /// From the least to the greatest.
+        span: f64,
+        /// Unit of the span.
+        unit: &'static str,
+    },
     /// The amplitude does not stand out of the noise.
     #[error(
         "no motion found: the best amplitude is {amplitude_m:.2e} m where the readings scatter by {noise_m:.2e} m; check that the marker is on the moving part"

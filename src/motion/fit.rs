@@ -11,6 +11,7 @@ use super::profile::Profile;
 use super::readings::{MIN_POSITIONS, Readings};
 use super::refusal::why_not_fitted;
 use super::robust::majority;
+use super::sinusoid::Sinusoid;
 use super::{MotionError, PositionRecord, PositionUse};
 use crate::stats::coverage_factor;
 use std::f64::consts::TAU;
@@ -80,7 +81,8 @@ impl MotionFit {
 ///
 /// * `records`: at least 8 positions, strictly increasing in time, over 1.5 cycles or more; gaps and wild values are fine.
 ///
-/// Weights are 1/(u_x² + (v·u_t)²); only their ratios matter, the residuals give the scale. Positions that stand out of
+/// Weights are 1/(u_x² + (v·u_t)²); only their ratios matter, the residuals give the scale. Where the residuals are no noise but what the
+/// law misses, their rms is added to every u_x. Positions that stand out of
 /// the majority's scatter are marked [`PositionUse::Outlier`] and left out. The covariance is (JᵀJ)⁻¹ times the residual variance times the
 /// residual's spectrum near ω (near 0 for c) over that of independent errors.
 ///
@@ -99,12 +101,15 @@ pub fn fit(records: &[PositionRecord]) -> Result<MotionFit, MotionError> {
     let starts = guesses(&readings);
     let majority =
         majority(&readings, &starts).map_err(|error| why_not_fitted(&readings, &starts, error))?;
-    let used = readings.only(&majority.belongs);
+    let mut used = readings.only(&majority.belongs);
     if used.len() < MIN_POSITIONS {
         return Err(MotionError::TooFewPositions {
             n_positions: used.len(),
             n_needed: MIN_POSITIONS,
         });
+    }
+    if let Some(miss_m) = what_the_law_misses(&used, majority.sinusoid) {
+        used.widen(miss_m);
     }
     let plain = Plain::new(&used, majority.sinusoid)
         .map_err(|error| why_not_fitted(&readings, &starts, error.into()))?;
@@ -113,6 +118,19 @@ pub fn fit(records: &[PositionRecord]) -> Result<MotionFit, MotionError> {
     plain.is_long_and_dense_enough()?;
     let laws = laws::trials(&plain.weighted(&spread));
     Ok(assemble(records, &majority.belongs, &plain, &spread, laws))
+}
+
+/// Lag-1 autocorrelation of the residuals from which they are the law's miss and not the readings' noise.
+const STRUCTURED_LAG1: f64 = 0.7;
+
+/// RMS of the residuals, m, where they are the law's miss; None where they are noise, or the fit does not settle.
+///
+/// The readings' own uncertainties then say nothing of how far they lie off, and weights by them would pull the motion towards the slow
+/// parts of each swing, where a film sees best.
+fn what_the_law_misses(used: &Readings, start: Sinusoid) -> Option<f64> {
+    let spread = Plain::new(used, start).ok()?.spread().ok()?;
+    let diagnosis = spread.diagnosis;
+    (diagnosis.autocorrelation_lag1 > STRUCTURED_LAG1).then_some(diagnosis.rms_m)
 }
 
 fn assemble(

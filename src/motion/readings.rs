@@ -47,6 +47,8 @@ impl Readings {
                 });
             }
         }
+        check_span(records.iter().map(|r| r.t_s), "the times", "s")?;
+        check_span(records.iter().map(|r| r.x_m), "the positions", "m")?;
         let t_ref_s = records[0].t_s;
         let x_ref_m = median(records.iter().map(|r| r.x_m).collect());
         Ok(Self {
@@ -60,6 +62,13 @@ impl Readings {
                 .collect(),
             u_t_s: records.iter().map(|r| r.u_t_s).collect(),
         })
+    }
+
+    /// Adds an uncertainty that all readings share, m, in squares.
+    pub(super) fn widen(&mut self, u_m: f64) {
+        for u_x_m in &mut self.u_x_m {
+            *u_x_m = u_x_m.hypot(u_m);
+        }
     }
 
     pub(super) fn len(&self) -> usize {
@@ -96,6 +105,29 @@ impl Readings {
             u_t_s: pick(&self.u_t_s),
         }
     }
+}
+
+/// Spans that an experiment can have, s or m; beyond them the arithmetic would run into the ends of `f64`.
+const SPANS: std::ops::RangeInclusive<f64> = 1e-9..=1e12;
+
+/// Refuses values all over the range of `f64`; values that are all the same are refused later, as no motion.
+fn check_span(
+    values: impl Iterator<Item = f64>,
+    quantity: &'static str,
+    unit: &'static str,
+) -> Result<(), MotionError> {
+    let (low, high) = values.fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), v| {
+        (low.min(v), high.max(v))
+    });
+    let span = high - low;
+    if span == 0.0 || SPANS.contains(&span) {
+        return Ok(());
+    }
+    Err(MotionError::AbsurdSpan {
+        quantity,
+        span,
+        unit,
+    })
 }
 
 fn check(record: &PositionRecord, row: usize, unweighted: bool) -> Result<(), MotionError> {

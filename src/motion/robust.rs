@@ -24,8 +24,9 @@ const MAD_EFFICIENCY: f64 = 0.37;
 const ROUNDING_REL: f64 = 1e-11;
 /// A residual beyond this many scales counts the same as one at it when two robust fits are compared.
 const TRUNCATION: f64 = 3.0;
-/// Lag-1 autocorrelation of the robust residuals from which they show a law that does not fit rather than noise.
-const STRUCTURED_LAG1: f64 = 0.6;
+/// How far a law that does not fit may miss the motion, as a part of its amplitude: dry friction taken for viscous misses by 4 % where
+/// half the amplitude is lost in a record. A glider that is touched or a marker that is mislaid goes farther off.
+const MISSED_REL: f64 = 0.05;
 /// Distance from the neighbours' cubic, in robust scales of that distance, up to which a reading goes with its neighbours.
 const SHARED_SCALES: f64 = 6.0;
 /// Stated uncertainties that differ by more than this factor get a first round with equal weights.
@@ -77,10 +78,9 @@ pub(super) fn majority(readings: &Readings, starts: &[Guess]) -> Result<Majority
             MAD_EFFICIENCY * degrees_of_freedom,
         );
     let mut belongs: Vec<bool> = best.normalised.iter().map(|z| z.abs() <= limit).collect();
-    if lag1(&best.normalised, TRUNCATION * best.scale) > STRUCTURED_LAG1 {
-        let sigma_m = best.sinusoid.sigma_m(readings);
-        spare_what_its_neighbours_share(&best.normalised, &sigma_m, &mut belongs);
-    }
+    let sigma_m = best.sinusoid.sigma_m(readings);
+    let near_m = MISSED_REL * best.sinusoid.amplitude_m;
+    spare_what_its_neighbours_share(&best.normalised, &sigma_m, near_m, &mut belongs);
     let n_outliers = belongs.iter().filter(|b| !**b).count();
     if 3 * n_outliers > readings.len() {
         return Err(MotionError::TooManyOutliers {
@@ -94,17 +94,14 @@ pub(super) fn majority(readings: &Readings, starts: &[Guess]) -> Result<Majority
     })
 }
 
-/// Lag-1 autocorrelation of values cut off at ±`limit`, so that wild ones do not decide it.
-fn lag1(values: &[f64], limit: f64) -> f64 {
-    let cut: Vec<f64> = values.iter().map(|z| z.clamp(-limit, limit)).collect();
-    let square: f64 = cut.iter().map(|z| z * z).sum();
-    let product: f64 = cut.windows(2).map(|pair| pair[0] * pair[1]).sum();
-    if square > 0.0 { product / square } else { 0.0 }
-}
-
 /// Where the law itself misses the motion, residuals are large and smooth, and their spread is no measure of the noise: a
-/// reading then stays a reading of the motion unless it also stands off the cubic through its four neighbours.
-fn spare_what_its_neighbours_share(normalised: &[f64], sigma_m: &[f64], belongs: &mut [bool]) {
+/// reading within `near_m` of the motion then stays a reading of it unless it also stands off the cubic through its four neighbours.
+fn spare_what_its_neighbours_share(
+    normalised: &[f64],
+    sigma_m: &[f64],
+    near_m: f64,
+    belongs: &mut [bool],
+) {
     // In metres: neighbours share the law's miss, not the weights.
     let residual_m: Vec<f64> = normalised.iter().zip(sigma_m).map(|(z, s)| z * s).collect();
     let off: Vec<f64> = residual_m
@@ -115,7 +112,7 @@ fn spare_what_its_neighbours_share(normalised: &[f64], sigma_m: &[f64], belongs:
     // A single wild reading shows in five places, so that the median stays that of the others.
     let scale = median(off.iter().map(|off| off.abs()).collect()) / normal_quantile(0.75);
     for (at, off) in off.iter().enumerate() {
-        if off.abs() <= SHARED_SCALES * scale {
+        if off.abs() <= SHARED_SCALES * scale && residual_m[at + 2].abs() <= near_m {
             belongs[at + 2] = true;
         }
     }
@@ -125,7 +122,8 @@ fn spare_what_its_neighbours_share(normalised: &[f64], sigma_m: &[f64], belongs:
         for (end, step) in [(0, 1), (1, 1), (n - 1, -1), (n - 2, -1)] {
             let r = |k: isize| residual_m[end.saturating_add_signed(k * step)];
             let beyond = 4.0 * r(1) - 6.0 * r(2) + 4.0 * r(3) - r(4);
-            if (r(0) - beyond).abs() <= 6.0 * SHARED_SCALES * scale * sigma_m[end] {
+            let shared = (r(0) - beyond).abs() <= 6.0 * SHARED_SCALES * scale * sigma_m[end];
+            if shared && r(0).abs() <= near_m {
                 belongs[end] = true;
             }
         }

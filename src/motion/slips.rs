@@ -42,12 +42,17 @@ pub struct SlipSearch {
 const MOST_SLIPS: usize = 12;
 /// Rounds of regression, rounding and fitting.
 const MOST_ROUNDS: usize = 8;
+/// Rounds in which the places are looked at anew, and how far each may move, in readings.
+const PLACING_ROUNDS: usize = 2;
+const PLACING_REACH: usize = 12;
 /// A step that takes off less than this part of what the best one did is left to the next round.
 const MINOR_SHARE: f64 = 0.05;
 /// Smallest step that is taken up, in frames. Evenly spaced slips look like a slower motion, and each by itself like a third of a frame.
 const LEAST_FRAMES: f64 = 0.15;
 /// Standard scores a step must stand out by. Noise alone reaches 5 in no place of a million.
 const LEAST_SCORE: f64 = 8.0;
+/// Distance from the neighbours' cubic, in noise of a reading, up to which a reading off the motion still takes part.
+const NEIGHBOUR_SCORES: f64 = 8.0;
 /// Largest standard uncertainty of a step, in frames, at which it can be told from its neighbours.
 const MOST_U_FRAMES: f64 = 0.07;
 /// Largest distance of an estimate from a whole number, in frames.
@@ -78,7 +83,9 @@ pub fn fit_with_slips(
     let mut places: Vec<(usize, i32)> = Vec::new();
     // Around the first, wrong fit the regression is linear only roughly: what it leaves is looked through again.
     for _ in 0..MOST_ROUNDS {
-        let Some(steps) = Regression::of(&moved, &motion, frame_interval_s).map(|r| r.steps())
+        let known: Vec<usize> = places.iter().map(|(at, _)| *at).collect();
+        let Some(steps) =
+            Regression::of(&moved, &motion, frame_interval_s).map(|r| r.steps(&known))
         else {
             break;
         };
@@ -92,17 +99,22 @@ pub fn fit_with_slips(
             }
             break;
         }
-        for &(at, n_frames) in &whole {
-            shift(&mut moved, at, n_frames, frame_interval_s);
-        }
-        places.extend(whole);
+        places = merged([places, whole].concat());
+        moved = shifted(records, &places, frame_interval_s);
         let forwards = moved.windows(2).all(|pair| pair[1].t_s > pair[0].t_s);
         match fit(&moved) {
             Ok(next) if forwards => motion = next,
             _ => return Ok(unchanged(true)),
         }
     }
-    let places = merged(places);
+    for _ in 0..PLACING_ROUNDS {
+        place_anew(records, &motion, &mut places, frame_interval_s);
+        moved = shifted(records, &places, frame_interval_s);
+        match fit(&moved) {
+            Ok(next) => motion = next,
+            Err(_) => return Ok(unchanged(true)),
+        }
+    }
     match certain(&moved, &motion, &places, frame_interval_s) {
         Some(slips) => Ok(SlipSearch {
             slips,
@@ -114,10 +126,54 @@ pub fn fit_with_slips(
     }
 }
 
-/// Moves the times from a place on by whole frame intervals.
-fn shift(records: &mut [PositionRecord], at: usize, n_frames: i32, frame_interval_s: f64) {
-    for record in &mut records[at..] {
-        record.t_s += f64::from(n_frames) * frame_interval_s;
+/// The record with its times moved behind every place.
+fn shifted(
+    records: &[PositionRecord],
+    places: &[(usize, i32)],
+    frame_interval_s: f64,
+) -> Vec<PositionRecord> {
+    let mut moved = records.to_vec();
+    for &(at, n_frames) in places {
+        for record in &mut moved[at..] {
+            record.t_s += f64::from(n_frames) * frame_interval_s;
+        }
+    }
+    moved
+}
+
+/// Moves each place to where the readings around it agree best with the motion before and behind it.
+///
+/// The regression is linear in the step; where several frames are missing at a turning point its place is a few frames off.
+fn place_anew(
+    records: &[PositionRecord],
+    motion: &MotionFit,
+    places: &mut [(usize, i32)],
+    frame_interval_s: f64,
+) {
+    for this in 0..places.len() {
+        let (at, n_frames) = places[this];
+        let behind: i32 = places[..this].iter().map(|(_, n)| n).sum();
+        let first = at
+            .saturating_sub(PLACING_REACH)
+            .max(this.checked_sub(1).map_or(1, |before| places[before].0 + 1));
+        let next = places
+            .get(this + 1)
+            .map_or(records.len(), |(next, _)| *next);
+        let last = (at + PLACING_REACH).min(next.saturating_sub(1));
+        let miss = |record: &PositionRecord, n: i32| {
+            let t_s = record.t_s + f64::from(n) * frame_interval_s;
+            (record.x_m - motion.position_m(t_s)).powi(2)
+        };
+        // From one candidate to the next a single reading passes from behind the gap to before it.
+        let (mut change, mut best) = (0.0, (0.0, first));
+        for candidate in first..last {
+            let record = &records[candidate];
+            change += miss(record, behind) - miss(record, behind + n_frames);
+            if change < best.0 {
+                best = (change, candidate + 1);
+            }
+        }
+        places[this].0 = best.1;
     }
 }
 
@@ -184,9 +240,13 @@ struct Regression {
 
 impl Regression {
     fn of(records: &[PositionRecord], motion: &MotionFit, frame_interval_s: f64) -> Option<Self> {
-        let index: Vec<usize> = (0..records.len())
-            .filter(|&at| motion.uses[at] == PositionUse::Used)
-            .collect();
+        let sigma_m = noise_m(&motion.residual_m);
+        // Behind a large slip the readings lie far off the motion that was fitted before it, but go with their neighbours.
+        let takes_part = |at: &usize| {
+            motion.uses[*at] == PositionUse::Used
+                || goes_with_neighbours(&motion.residual_m, *at, NEIGHBOUR_SCORES * sigma_m)
+        };
+        let index: Vec<usize> = (0..records.len()).filter(takes_part).collect();
         let t_s: Vec<f64> = index.iter().map(|&at| records[at].t_s).collect();
         let rows: Vec<[f64; N_SLOPES]> = t_s.iter().map(|&t_s| slopes(motion, t_s)).collect();
         let slopes = DMatrix::from_fn(rows.len(), N_SLOPES, |row, column| rows[row][column]);
@@ -195,7 +255,6 @@ impl Regression {
             .map(|&t_s| velocity_m_per_s(motion, t_s) * frame_interval_s)
             .collect();
         let residual_m: Vec<f64> = index.iter().map(|&at| motion.residual_m[at]).collect();
-        let sigma_m = noise_m(&residual_m);
         let residual_m = DVector::from_vec(residual_m);
         (sigma_m > 0.0).then_some(Self {
             index,
@@ -207,9 +266,9 @@ impl Regression {
         })
     }
 
-    /// The steps that stand out, found one after another, then each placed anew beside the others; in no order.
-    fn steps(&self) -> Vec<Step> {
-        let mut places: Vec<usize> = Vec::new();
+    /// What is left of the known steps, and further ones that stand out: found one after another, then each placed anew beside the others.
+    fn steps(&self, known: &[usize]) -> Vec<Step> {
+        let mut places: Vec<usize> = known.to_vec();
         let mut most = 0.0_f64;
         while places.len() < MOST_SLIPS {
             let Some((gain, place)) = self.best_place(&places) else {
@@ -222,7 +281,7 @@ impl Regression {
             most = most.max(gain);
             places.push(place);
         }
-        for at in (0..places.len()).chain(0..places.len()) {
+        for at in (known.len()..places.len()).chain(known.len()..places.len()) {
             let place = places.remove(at);
             let anew = self.best_place(&places).map_or(place, |(_, place)| place);
             places.insert(at, anew);
@@ -348,6 +407,14 @@ fn velocity_m_per_s(motion: &MotionFit, t_s: f64) -> f64 {
     let omega = motion.damped_angular_frequency_rad_per_s;
     let (sin, cos) = (omega * tau + motion.phase_rad).sin_cos();
     -motion.envelope_m(t_s) * (motion.decay_rate_per_s * cos + omega * sin)
+}
+
+/// True where a residual lies within `limit_m` of the cubic through its four neighbours; an end has none.
+fn goes_with_neighbours(residual_m: &[f64], at: usize, limit_m: f64) -> bool {
+    let around = at
+        .checked_sub(2)
+        .and_then(|from| residual_m.get(from..from + 5));
+    around.is_some_and(|r| (r[2] - (4.0 * (r[1] + r[3]) - r[0] - r[4]) / 6.0).abs() <= limit_m)
 }
 
 /// Noise of a reading from third differences, whose variance is 20 times a reading's: neither a step of the phase nor a law that

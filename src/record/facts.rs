@@ -109,7 +109,7 @@ fn marker_words(film: &FilmPart) -> String {
     let steady = if film.steady_box_px.is_some() {
         "a steady patch removed the camera's shake"
     } else {
-        "no steady patch: a shaking camera would show"
+        "no steady patch given, so that camera shake is not taken off"
     };
     format!(
         "box {left:.0}, {top:.0}, {width:.0} × {height:.0} px in frame {}; {steady}",

@@ -71,6 +71,8 @@ fn compose(measurement: &Measurement, run_toml: &str) -> Result<Vec<Entry>, Reco
 
 /// The folder a path stands for: links are followed, or the rename would replace the link and leave its target.
 fn resolve(out_dir: &Path) -> Result<PathBuf, RecordError> {
+    // `name/.` and `name/` are `name`: a rename cannot be asked of them.
+    let out_dir = &out_dir.components().collect::<PathBuf>();
     if fs::symlink_metadata(out_dir).is_ok_and(|facts| facts.is_symlink()) {
         return fs::canonicalize(out_dir).map_err(|source| RecordError::NotWritable {
             parent: out_dir.to_owned(),

@@ -49,5 +49,20 @@ fn parameter((name, value, u, unit): &(&'static str, f64, Option<f64>, &'static 
         Some(u) => with_u(*value * factor, *u * factor),
         None => format!("{} (held)", significant(*value * factor, 4)),
     };
-    format!("{name} = {figure} {unit}").trim_end().to_owned()
+    format!("{} = {figure} {unit}", symbol(name))
+        .trim_end()
+        .to_owned()
+}
+
+/// The symbol of a parameter, as the glossary explains it.
+fn symbol(name: &'static str) -> &'static str {
+    match name {
+        "amplitude" => "A",
+        "phase" => "φ",
+        "decay_rate" => "γ",
+        "damped_angular_frequency" | "angular_frequency" => "ω",
+        "centre" => "c",
+        "friction_over_stiffness" => "F/k",
+        other => other,
+    }
 }

@@ -66,7 +66,7 @@ const QUALITY_FACTOR: Words = Words {
     key: "quality_factor",
     title: "Quality factor",
     symbol: "Q",
-    meaning: "1/(2ζ): about π times the number of swings in which the amplitude falls to 37 %. High means little loss.",
+    meaning: "1/(2ζ): the amplitude falls to 37 % in Q/π swings. High means little loss.",
     percent: false,
 };
 const ENERGY_LOSS_PER_CYCLE: Words = Words {
@@ -94,7 +94,7 @@ const CENTRE: Words = Words {
     key: "centre",
     title: "Centre of the motion",
     symbol: "c",
-    meaning: "Rest position on the motion axis, counted from the axis origin.",
+    meaning: "Rest position on the motion axis, counted from the marker's mean position.",
     percent: false,
 };
 

@@ -54,7 +54,7 @@ fn head(measurement: &Measurement) -> String {
     };
     format!(
         "<header>\n<h1>Free oscillation of {}</h1>\n<p class=\"lead\">Measured from a {kind}: <span>{} readings</span> over <span>{} s</span>, \
-         <span>{} cycles</span>. Uncertainties are expanded to 95 % unless another is named.</p>\n</header>\n",
+         <span>{} cycles</span>. Uncertainties are expanded to 95 % unless another level is named.</p>\n</header>\n",
         escape(&measurement.source_name),
         fit.residual.n_used,
         significant(fit.t_end_s - fit.t_ref_s, 4),
@@ -174,32 +174,22 @@ fn warnings(measurement: &Measurement) -> String {
 }
 
 fn repeat(measurement: &Measurement) -> String {
-    let (words, command) = if measurement.film.is_some() {
-        let words = "Save the sheet below as run.toml (it also lies beside this report), put the clip next to it, and run:";
-        (words, "ebbmark measure run.toml".to_owned())
+    let what = if measurement.film.is_some() {
+        "the clip"
     } else {
-        (
-            "With the table of positions at hand, run:",
-            format!("ebbmark refit {}", shell_word(&measurement.source_name)),
-        )
+        "the table"
     };
+    let words = format!(
+        "Run this in the folder of this report; or save the sheet below as run.toml beside {what} and run it there:"
+    );
+    let command = "ebbmark measure run.toml";
     format!(
         "{}<pre>{}</pre>\n<p>Version {}. The same source and sheet give the same files, byte for byte.</p>\n<pre>{}</pre>\n",
-        paragraph(words),
-        escape(&command),
+        paragraph(&words),
+        command,
         env!("CARGO_PKG_VERSION"),
         escape(&measurement.sheet_toml)
     )
-}
-
-/// A name as one word of a shell, so that a command copied from a page does nothing else.
-fn shell_word(name: &str) -> String {
-    let plain = |c: char| c.is_ascii_alphanumeric() || "._/-".contains(c);
-    if name.chars().all(plain) && !name.starts_with('-') {
-        name.to_owned()
-    } else {
-        format!("'{}'", name.replace('\'', "'\\''"))
-    }
 }
 
 fn glossary(measurement: &Measurement) -> String {

@@ -57,6 +57,12 @@ pub(super) fn shown(quantity: &Quantity, percent: bool) -> Shown {
         low.map(scaled),
         high.map(scaled),
     ) {
+        // A loss that may be nothing has the bound 0 below it: the upper end alone says something.
+        (Some(_), Some(0.0), Some(high)) => (
+            format!("≤ {}", bound(high, false)),
+            "(95 %, one-sided)".to_owned(),
+            String::new(),
+        ),
         (Some(value), Some(low), Some(high)) => between(value, low, high),
         (None, Some(low), None) => (
             format!("≥ {}", bound(low, true)),

@@ -30,7 +30,11 @@ pub fn write_file(path: &Path, bytes: &[u8]) -> Result<(), RecordError> {
         path: path.to_owned(),
         source,
     };
-    let mut file = tempfile::Builder::new()
+    let mut builder = tempfile::Builder::new();
+    // Temporary files are for their owner alone; a clip or a still is for whom the system's mask says.
+    #[cfg(unix)]
+    builder.permissions(std::os::unix::fs::PermissionsExt::from_mode(0o666));
+    let mut file = builder
         .prefix(".ebbmark-")
         .tempfile_in(folder)
         .map_err(failed)?;

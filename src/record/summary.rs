@@ -13,11 +13,11 @@ const SHOWN_KEYS: [&str; 5] = [
     "energy_loss_per_cycle",
     "amplitude",
 ];
-/// Verdicts and warnings that are told in full, so that the text stays within 15 lines.
+/// Verdicts and warnings that are told in full, so that the text stays within 17 lines.
 const MAX_VERDICTS: usize = 4;
 const MAX_WARNINGS: usize = 2;
 
-/// Verdicts, key figures with their expanded uncertainty, residual and warnings, in at most 15 lines.
+/// Verdicts, key figures with their expanded uncertainty, residual and warnings, in at most 17 lines.
 ///
 /// Every line ends with a newline. Control characters of file names and sentences are left out, so that a hostile name
 /// cannot steer the terminal.
@@ -29,8 +29,16 @@ pub fn summary(measurement: &Measurement) -> String {
             .verdicts
             .iter()
             .take(MAX_VERDICTS)
-            .map(|verdict| format!("{}: {}", verdict.answer.word(), verdict.sentence)),
+            .map(|verdict| {
+                format!(
+                    "{} {}: {}",
+                    verdict.asked,
+                    verdict.answer.word(),
+                    verdict.sentence
+                )
+            }),
     );
+    lines.push("Figures with their 95 % uncertainty:".to_owned());
     for (words, quantity) in SHOWN_KEYS
         .iter()
         .filter_map(|key| find(&measurement.quantities, key))
@@ -57,6 +65,14 @@ pub fn summary(measurement: &Measurement) -> String {
             .take(MAX_WARNINGS)
             .map(|warning| format!("  {}", warning.sentence)),
     );
+    if let Some(n_more) = measurement
+        .warnings
+        .len()
+        .checked_sub(MAX_WARNINGS)
+        .filter(|&n| n > 0)
+    {
+        lines.push(format!("  and {n_more} more in the report"));
+    }
     lines
         .iter()
         .map(|line| format!("{}\n", line.replace(char::is_control, "").trim_end()))

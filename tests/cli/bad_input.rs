@@ -335,7 +335,9 @@ fn tables_with_mistakes_are_refused_with_their_line() {
         .run(["refit", "bad.csv"])
         .fails(3, &["bad.csv", "line 3", "left"]);
     bench.run(["refit", "few.csv"]).fails(4, &["few"]);
-    bench.run(["refit", "back.csv"]).fails(4, &["row"]);
+    bench
+        .run(["refit", "back.csv"])
+        .fails(3, &["back.csv", "position 3"]);
     bench
         .run(["refit", "none.csv"])
         .fails(3, &["none.csv", "no such file"]);

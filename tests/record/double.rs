@@ -248,6 +248,8 @@ impl Double {
             streak: streak(rows),
             n_unsteady: 0,
             capture_rate: CaptureRate::AsStamped,
+            rows_swept_rel: 0.01,
+            readout_given: false,
             slips: Vec::new(),
             doubtful_phase: false,
         }

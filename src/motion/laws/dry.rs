@@ -165,6 +165,7 @@ fn fit(weighted: &Weighted) -> Result<LawFit, LeastSquaresError> {
         sum_of_squares: solution.sum_of_squares,
         n_free: 5,
         enlargement,
+        autocorrelation_lag1: noise::autocorrelation_lag1(&solution.residuals),
     })
 }
 

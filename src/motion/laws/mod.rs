@@ -10,11 +10,16 @@ use super::least_squares::LeastSquaresError;
 use super::readings::Readings;
 use super::sinusoid::Sinusoid;
 use crate::stats::f_upper;
+use crate::uncertainty::prefixed;
 
 /// A law is ruled out by the nested test where its misfit would be so large by chance less often than this, as a 95 % interval rules out.
 const SIGNIFICANCE: f64 = 0.05;
 /// A law is ruled out by AICc where another one's is lower by more than this: its relative likelihood is then below e⁻⁵ = 0.7 %.
 const AICC_MARGIN: f64 = 10.0;
+
+/// A law is ruled out where its residuals follow one another this closely: what it leaves over is then motion, not noise. Errors of a
+/// compressed film reach 0.3, those of a smoothed sensor 0.6.
+const STRUCTURED_LAG1: f64 = 0.7;
 
 /// The laws tried, the simplest first.
 const LAWS: [Law; 3] = [none::LAW, viscous::LAW, dry::LAW];
@@ -53,6 +58,8 @@ pub(super) struct LawFit {
     n_free: usize,
     /// Variance enlargement of this law's own residuals.
     enlargement: f64,
+    /// Lag-1 autocorrelation of this law's own residuals.
+    autocorrelation_lag1: f64,
 }
 
 /// One law of loss, fitted to the record.
@@ -125,7 +132,8 @@ fn judge(
     above_lowest: f64,
     weighted: &Weighted,
 ) -> (bool, String) {
-    let by_aicc = above_lowest > AICC_MARGIN;
+    let structured = fit.autocorrelation_lag1 > STRUCTURED_LAG1;
+    let by_aicc = above_lowest > AICC_MARGIN || structured;
     let verdict = |excluded: bool| {
         if excluded {
             "ruled out"
@@ -150,21 +158,30 @@ fn judge(
             format!("p = {p:.4}")
         };
         let reason = format!(
-            "Motion {} leaves {:.2e} m rms against {:.2e} m {} (F = {f:.2} with {extra:.0} and {:.0} degrees of freedom, {chance}), so it is {}.",
+            "Motion {} leaves {} rms, motion {} {} ({chance}), so it is {}.",
             law.described,
-            rms_m(fit, weighted),
-            rms_m(wider_fit, weighted),
+            prefixed(rms_m(fit, weighted), "m", 2),
             wider.described,
-            weighted.degrees_of_freedom,
+            prefixed(rms_m(wider_fit, weighted), "m", 2),
             verdict(excluded),
         );
         return (excluded, reason);
     }
+    let left = prefixed(rms_m(fit, weighted), "m", 2);
+    let criterion = if structured {
+        format!(
+            "that is no noise (lag-1 autocorrelation {:.2}, limit {STRUCTURED_LAG1})",
+            fit.autocorrelation_lag1
+        )
+    } else if above_lowest > 0.0 {
+        format!("its AICc lies {above_lowest:.1} above the lowest (limit {AICC_MARGIN})")
+    } else {
+        "its AICc is the lowest".to_owned()
+    };
     let reason = format!(
-        "Motion {} leaves {:.2e} m rms; its AICc lies {above_lowest:.1} above the lowest (limit {AICC_MARGIN}), so it is {}.",
+        "Motion {} leaves {left} rms; {criterion}, so it is {}.",
         law.described,
-        rms_m(fit, weighted),
-        verdict(by_aicc),
+        verdict(by_aicc)
     );
     (by_aicc, reason)
 }

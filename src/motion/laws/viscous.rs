@@ -2,6 +2,7 @@
 
 use super::{Law, LawFit, Weighted};
 use crate::motion::least_squares::{LeastSquaresError, Patience, minimise, refine};
+use crate::motion::noise;
 use crate::motion::sinusoid::{Sinusoid, SinusoidProblem};
 
 /// The law's row in the table.
@@ -64,6 +65,7 @@ pub(super) fn fit(
         sum_of_squares: solution.sum_of_squares,
         n_free: solution.parameters.len(),
         enlargement,
+        autocorrelation_lag1: noise::autocorrelation_lag1(&solution.residuals),
     })
 }
 
