@@ -24,6 +24,8 @@ const MAD_EFFICIENCY: f64 = 0.37;
 const ROUNDING_REL: f64 = 1e-11;
 /// A residual beyond this many scales counts the same as one at it when two robust fits are compared.
 const TRUNCATION: f64 = 3.0;
+/// Readings in a neighbourhood.
+const NEIGHBOURHOOD: usize = 31;
 /// How far a law that does not fit may miss the motion, as a part of its amplitude: dry friction taken for viscous misses by 4 % where
 /// half the amplitude is lost in a record. A glider that is touched or a marker that is mislaid goes farther off.
 const MISSED_REL: f64 = 0.05;
@@ -109,10 +111,19 @@ fn spare_what_its_neighbours_share(
         .zip(&sigma_m[2.min(sigma_m.len())..])
         .map(|(r, s)| (r[2] - (4.0 * (r[1] + r[3]) - r[0] - r[4]) / 6.0) / s)
         .collect();
-    // A single wild reading shows in five places, so that the median stays that of the others.
-    let scale = median(off.iter().map(|off| off.abs()).collect()) / normal_quantile(0.75);
+    // A marker at rest is copied from frame to frame and scatters less than one that moves: the scale is the neighbourhood's. A single
+    // wild reading shows in five places of a window, so that its median stays that of the others.
+    let scale_around = |at: usize| {
+        let from = at.saturating_sub(NEIGHBOURHOOD / 2);
+        let to = (from + NEIGHBOURHOOD).min(off.len());
+        median(off[from.min(to)..to].iter().map(|off| off.abs()).collect()) / normal_quantile(0.75)
+    };
     for (at, off) in off.iter().enumerate() {
-        if off.abs() <= SHARED_SCALES * scale && residual_m[at + 2].abs() <= near_m {
+        let miss = !belongs[at + 2];
+        if miss
+            && off.abs() <= SHARED_SCALES * scale_around(at)
+            && residual_m[at + 2].abs() <= near_m
+        {
             belongs[at + 2] = true;
         }
     }
@@ -122,6 +133,7 @@ fn spare_what_its_neighbours_share(
         for (end, step) in [(0, 1), (1, 1), (n - 1, -1), (n - 2, -1)] {
             let r = |k: isize| residual_m[end.saturating_add_signed(k * step)];
             let beyond = 4.0 * r(1) - 6.0 * r(2) + 4.0 * r(3) - r(4);
+            let scale = scale_around(end.saturating_sub(2));
             let shared = (r(0) - beyond).abs() <= 6.0 * SHARED_SCALES * scale * sigma_m[end];
             if shared && r(0).abs() <= near_m {
                 belongs[end] = true;

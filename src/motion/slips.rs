@@ -166,8 +166,8 @@ fn place_anew(
         };
         // From one candidate to the next a single reading passes from behind the gap to before it.
         let (mut change, mut best) = (0.0, (0.0, first));
-        for candidate in first..last {
-            let record = &records[candidate];
+        let around = records.iter().enumerate().take(last).skip(first);
+        for (candidate, record) in around {
             change += miss(record, behind) - miss(record, behind + n_frames);
             if change < best.0 {
                 best = (change, candidate + 1);

@@ -59,7 +59,7 @@ pub enum TrackError {
     },
     /// Nothing in the box tells where it is.
     #[error(
-        "the {what} box in frame {frame} has too little texture along the motion: a shift could be told to {u_px:.2} px only, and {limit_px:.2} px is the most that is of use; choose a patch with strong edges across the motion, or stick on a marker"
+        "the {what} box in frame {frame} has too little texture along the motion: its place could be told only to {u_px:.2} px, and {limit_px:.2} px or better is needed; choose a patch with strong edges across the motion, or stick on a marker"
     )]
     TooLittleTexture {
         /// `marker` or `steady`.

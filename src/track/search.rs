@@ -54,8 +54,11 @@ pub(super) fn search_window(
         score,
         contrast,
     } = quadratic_peak(&correlate(&field, width, height, template))?;
-    // The correlation finds the place; laying the template over it tells it more finely.
-    let aligned = template.align(&field, width, height, p_px)?;
+    // The correlation finds the place; laying the template over it tells it more finely. Where that does not settle (a weak texture, a
+    // corner of the window), the peak between the pixels stands.
+    let aligned = template
+        .align(&field, width, height, p_px)
+        .unwrap_or_else(|| template.unaligned(p_px, score));
     let corner_px = [
         to_f64(left) + aligned.corner_px[0],
         to_f64(top) + aligned.corner_px[1],

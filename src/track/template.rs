@@ -37,6 +37,8 @@ const LEAST_SIDE_PX: usize = 8;
 const MOST_SIDE_PX: usize = 512;
 /// Largest bound on the standard uncertainty of a shift along the motion, px: beyond it a box has no usable texture.
 const TEXTURE_LIMIT_PX: f64 = 0.1;
+/// The same for a steady patch: it only has to be better than the shake it takes off.
+const STEADY_LIMIT_PX: f64 = 0.5;
 /// Noise taken at the least when texture is judged, on the 8-bit scale: a compressed film hides its noise where nothing moves.
 const LEAST_NOISE_GREY: f64 = 1.0;
 
@@ -111,11 +113,16 @@ impl Template {
         let mut window = Vec::new();
         luma.window_into(left - reach, top - reach, wide, high, &mut window);
         let noise_grey = noise(&window, wide).max(LEAST_NOISE_GREY);
+        let limit_px = if what == "steady" {
+            STEADY_LIMIT_PX
+        } else {
+            TEXTURE_LIMIT_PX
+        };
         let too_little = |u_px: f64| TrackError::TooLittleTexture {
             what,
             frame,
             u_px,
-            limit_px: TEXTURE_LIMIT_PX,
+            limit_px,
         };
         let template = Self::from_lowpassed(lowpass(&window, wide, high), width, height)
             .ok_or_else(|| too_little(f64::INFINITY))?;
@@ -124,7 +131,7 @@ impl Template {
             noise_grey * 16.0 * std::f64::consts::SQRT_2 * lowpassed_noise_gain(),
             along,
         );
-        if u_px <= TEXTURE_LIMIT_PX {
+        if u_px <= limit_px {
             Ok(template)
         } else {
             Err(too_little(u_px))
@@ -190,6 +197,21 @@ impl Template {
     fn shift_u_px(&self, noise: f64, [x, y]: [f64; 2]) -> f64 {
         let [xx, xy, yy] = self.aligner.shift_covariance();
         noise * ((x * x * xx + 2.0 * x * y * xy + y * y * yy) / (x * x + y * y)).sqrt()
+    }
+
+    /// A position as the score's peak gives it, with the covariance of what the score leaves unexplained:
+    /// Σ(residual)² = (1 − r²)/r² · Σ(t − t̄)² in the template's own contrast.
+    pub(super) fn unaligned(&self, corner_px: [f64; 2], score: f64) -> Aligned {
+        let unexplained = (1.0 - score * score).max(0.0) / (score * score).max(1e-6);
+        let variance = unexplained * self.energy / to_f64(self.width * self.height);
+        let covariance_px2 = self
+            .aligner
+            .shift_covariance()
+            .map(|entry| entry * variance);
+        Aligned {
+            corner_px,
+            covariance_px2,
+        }
     }
 
     /// Lays the template over a field of low-passed luma, starting at a corner near the peak; the position and its covariance.
