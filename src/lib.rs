@@ -3,6 +3,7 @@ pub mod cli;
 pub mod footage;
 pub mod measurement;
 pub mod motion;
+mod number;
 pub mod record;
 pub mod rehearsal;
 pub mod run_sheet;

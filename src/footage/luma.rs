@@ -1,5 +1,7 @@
 //! Luma, borrowed from the decoder: no colour conversion and no copy of a whole picture.
 
+use crate::number::to_f64;
+
 /// How a sample is stored.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub(super) enum Sample {
@@ -263,14 +265,6 @@ fn clamp(first: i64, offset: usize, n: usize) -> usize {
     let last = i64::try_from(n).unwrap_or(i64::MAX) - 1;
     let wanted = first.saturating_add(i64::try_from(offset).unwrap_or(i64::MAX));
     usize::try_from(wanted.clamp(0, last.max(0))).unwrap_or(0)
-}
-
-#[expect(
-    clippy::cast_precision_loss,
-    reason = "pixel numbers are far below 2^53"
-)]
-fn to_f64(index: usize) -> f64 {
-    index as f64
 }
 
 #[expect(

@@ -6,6 +6,7 @@ use crate::footage::{
     CaptureRate, ClipFacts, Footage, FootageError, FrameClock, FrameTimes, Limits, Orientation,
     StreamFacts, frame_clock, time_scale, with_patience,
 };
+use crate::number::to_f64;
 use crate::run_sheet::FilmRun;
 use crate::scale::{ScaleAxis, ScaleBar, motion_axis};
 use crate::track::{self, FilmTrack, PixelBox, Plan, Sighting, TrackError};
@@ -447,11 +448,6 @@ fn display_path(track: &FilmTrack, orientation: &Orientation) -> (Vec<Option<[f6
         })
         .collect();
     (path, n_unsteady)
-}
-
-#[expect(clippy::cast_precision_loss, reason = "numbers of frames and pixels")]
-fn to_f64(n: usize) -> f64 {
-    n as f64
 }
 
 #[expect(

@@ -2,6 +2,7 @@
 
 use super::{MeasureError, RecordRow, RowStatus};
 use crate::footage::FrameTimes;
+use crate::number::to_f64;
 use crate::run_sheet::FitRun;
 use crate::scale::MotionAxis;
 
@@ -120,9 +121,4 @@ fn ends(t_s: &[f64]) -> (f64, f64) {
         .fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), &t_s| {
             (low.min(t_s), high.max(t_s))
         })
-}
-
-#[expect(clippy::cast_precision_loss, reason = "numbers of frames and pixels")]
-fn to_f64(n: usize) -> f64 {
-    n as f64
 }

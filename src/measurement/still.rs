@@ -2,6 +2,7 @@
 
 use super::Still;
 use crate::footage::{GreyPicture, Orientation};
+use crate::number::{byte, to_f64};
 
 /// The picture as displayed: turned, mirrored and with square pixels.
 ///
@@ -29,11 +30,6 @@ pub(super) fn upright(picture: &GreyPicture, shrunk_by: usize, orientation: &Ori
     }
 }
 
-#[expect(clippy::cast_precision_loss, reason = "sizes in pixels")]
-fn to_f64(n: usize) -> f64 {
-    n as f64
-}
-
 #[expect(
     clippy::cast_possible_truncation,
     clippy::cast_sign_loss,
@@ -41,15 +37,6 @@ fn to_f64(n: usize) -> f64 {
 )]
 fn whole(value: f64) -> usize {
     value.floor().max(0.0) as usize
-}
-
-#[expect(
-    clippy::cast_possible_truncation,
-    clippy::cast_sign_loss,
-    reason = "`as` saturates at 0 and 255"
-)]
-fn byte(value: f32) -> u8 {
-    value.round() as u8
 }
 
 #[cfg(test)]

@@ -13,6 +13,8 @@ use std::f64::consts::TAU;
 
 /// A leftover with neighbours correlated above this and above that part of the amplitude is a motion of another kind.
 const APERIODIC_LAG1: f64 = 0.5;
+/// Residuals below this part of the amplitude leave no doubt that the motion is a sinusoid.
+const CLEAR_REL: f64 = 0.05;
 /// See [`APERIODIC_LAG1`].
 const APERIODIC_REL: f64 = 0.5;
 /// Plain fits in which the weights follow the velocity; where times are certain one does.
@@ -137,6 +139,8 @@ impl<'a> Plain<'a> {
             self.used.len(),
             spread.diagnosis.n_effective,
         );
+        // A sinusoid that leaves next to nothing is one, however few of the errors are independent.
+        let significant = significant || residual_m < CLEAR_REL * amplitude_m;
         let aperiodic = alike && residual_m > APERIODIC_REL * amplitude_m;
         if aperiodic
             || self.sinusoid.decay_rate_per_s > self.sinusoid.omega_rad_per_s

@@ -2,6 +2,7 @@
 //!
 //! A line every hundred pixels with its number, a shorter mark every ten along the upper and the left edge.
 
+use crate::number::byte;
 use std::path::Path;
 
 use image::{Rgb, RgbImage};
@@ -111,15 +112,6 @@ fn ink(picture: &mut RgbImage, x: u32, y: u32) {
             *channel = byte(f32::from(*channel) * (1.0 - INK_SHARE) + f32::from(ink) * INK_SHARE);
         }
     }
-}
-
-#[expect(
-    clippy::cast_possible_truncation,
-    clippy::cast_sign_loss,
-    reason = "`as` saturates at 0 and 255"
-)]
-fn byte(value: f32) -> u8 {
-    value.round() as u8
 }
 
 #[expect(

@@ -9,6 +9,7 @@
 //! does move with it, it costs a tenth of the precision.
 
 use super::texture::spread;
+use crate::number::to_f64;
 use nalgebra::{Matrix4, Vector4};
 
 /// Way over which the weight rises from 0 at the edge to 1, px: the reach of the low-pass, 1.6 standard deviations of it.
@@ -258,11 +259,6 @@ fn taps(corner: f64, n: usize, length: usize) -> Option<(usize, [f64; 4])> {
     )]
     let first = whole as usize - 1;
     Some((first, taps))
-}
-
-#[expect(clippy::cast_precision_loss, reason = "sizes in pixels")]
-fn to_f64(n: usize) -> f64 {
-    n as f64
 }
 
 #[cfg(test)]

@@ -5,6 +5,7 @@ use super::search::{CoarseTemplate, Match, search_window};
 use super::sighting::{Sighting, SightingOutcome};
 use super::template::{PixelBox, Template};
 use crate::footage::LumaView;
+use crate::number::to_f64;
 
 /// Least score that can be a marker at all.
 const LEAST_SCORE: f64 = 0.5;
@@ -164,11 +165,6 @@ impl Follower {
             }
         }
     }
-}
-
-#[expect(clippy::cast_precision_loss, reason = "sizes in pixels")]
-fn to_f64(n: usize) -> f64 {
-    n as f64
 }
 
 #[expect(

@@ -1,6 +1,7 @@
 //! The peak between the pixels.
 
 use super::correlate::Scores;
+use crate::number::to_f64;
 
 /// A maximum of a score surface.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -53,14 +54,6 @@ pub fn quadratic_peak(scores: &Scores) -> Option<Peak> {
         score: score.clamp(-1.0, 1.0),
         contrast: scores.contrasts[v * scores.width + u],
     })
-}
-
-#[expect(
-    clippy::cast_precision_loss,
-    reason = "positions in a window of a few hundred pixels"
-)]
-fn to_f64(position: usize) -> f64 {
-    position as f64
 }
 
 #[cfg(test)]

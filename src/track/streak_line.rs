@@ -1,6 +1,7 @@
 //! The streak: one line of every frame along the motion axis.
 
 use crate::footage::LumaView;
+use crate::number::{byte, to_f64};
 
 /// Largest number of samples kept of a frame.
 const MOST_SAMPLES: usize = 1024;
@@ -87,11 +88,6 @@ fn inside(p: [f64; 2], d: [f64; 2], most: [f64; 2]) -> (f64, f64) {
     }
 }
 
-#[expect(clippy::cast_precision_loss, reason = "sizes in pixels")]
-fn to_f64(n: usize) -> f64 {
-    n as f64
-}
-
 #[expect(
     clippy::cast_possible_truncation,
     clippy::cast_sign_loss,
@@ -99,15 +95,6 @@ fn to_f64(n: usize) -> f64 {
 )]
 fn whole(value: f64) -> usize {
     value.floor().max(0.0) as usize
-}
-
-#[expect(
-    clippy::cast_possible_truncation,
-    clippy::cast_sign_loss,
-    reason = "`as` saturates at 0 and 255"
-)]
-fn byte(value: f32) -> u8 {
-    value.round() as u8
 }
 
 #[cfg(test)]

@@ -5,6 +5,7 @@ use super::align::{Aligned, Aligner};
 use super::lowpass::{LOWPASS_REACH_PX, lowpass};
 use super::texture::{lowpassed_noise_gain, noise};
 use crate::footage::LumaView;
+use crate::number::to_f64;
 
 /// A box of whole coded pixels.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -227,11 +228,6 @@ impl Template {
     ) -> Option<Aligned> {
         self.aligner.align(field, width, height, start_px)
     }
-}
-
-#[expect(clippy::cast_precision_loss, reason = "sizes in pixels")]
-fn to_f64(n: usize) -> f64 {
-    n as f64
 }
 
 #[expect(clippy::cast_precision_loss, reason = "pixel numbers")]

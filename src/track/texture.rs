@@ -1,6 +1,7 @@
 //! The noise in a box: how strong it is, and what the low-pass makes of it.
 
 use super::lowpass::{LOWPASS_REACH_PX, LOWPASS_SIGMA_PX};
+use crate::number::to_f64;
 
 /// Standard deviation of the low-passed part of white noise of unit standard deviation: 1/(2√π σ).
 pub(super) fn lowpassed_noise_gain() -> f64 {
@@ -49,9 +50,4 @@ pub(super) fn spread(plane: &[f64], width: usize) -> Vec<f64> {
             .sum();
     }
     both
-}
-
-#[expect(clippy::cast_precision_loss, reason = "sizes in pixels")]
-fn to_f64(n: usize) -> f64 {
-    n as f64
 }
