@@ -84,7 +84,7 @@ fn loss_present(fit: &MotionFit, quantities: &MotionQuantities) -> Verdict {
         (
             Answer::Yes,
             format!(
-                "Energy is lost: {lost} ± {expanded} % of it in a cycle (95 %), and the decay rate of {} ± {} s⁻¹ stands clear of zero.",
+                "{lost} ± {expanded} % of the energy is lost in a cycle (95 %), and the decay rate of {} ± {} s⁻¹ stands clear of zero.",
                 rounded(gamma, half(low, high)),
                 significant(half(low, high), 2)
             ),

@@ -4,4 +4,5 @@ mod bad_input;
 mod bench;
 mod decoding;
 mod main_job;
+mod readme;
 mod verbs;

@@ -139,6 +139,9 @@ pub fn quantities(fit: &MotionFit, external: &ExternalTerms) -> MotionQuantities
     }
 }
 
+/// Lag-1 autocorrelation from which the residuals are what the law misses rather than noise.
+const STRUCTURED_LAG1: f64 = 0.7;
+
 /// What the open shutter takes off the amplitude: a marker smeared over a time τ is seen at its mean place, and the amplitude
 /// comes out sin(ωτ/2)/(ωτ/2) ≈ 1 − (ωτ)²/24 times its size.
 ///
@@ -272,6 +275,13 @@ impl Ledger<'_> {
                 value_m,
             );
             rows.push(row.assumed(self.external.scale_assumed));
+        }
+        let residual = &self.fit.residual;
+        if index == 0 && residual.autocorrelation_lag1 > STRUCTURED_LAG1 {
+            // An envelope of another shape misses most at its ends: twice its rms, there the amplitude is read off.
+            let source = "what the law misses of the motion";
+            let row = BudgetRow::new(key, source, Evaluation::A, residual.rms_m, "m", 2.0);
+            rows.push(row.with_degrees_of_freedom(self.fit.degrees_of_freedom));
         }
         if let (0, Some(longest_s)) = (index, self.external.longest_exposure_s) {
             rows.push(smear_row(key, value_m, self.figures.omega * longest_s));

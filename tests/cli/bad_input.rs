@@ -343,3 +343,64 @@ fn tables_with_mistakes_are_refused_with_their_line() {
         .fails(3, &["none.csv", "no such file"]);
     assert_eq!(bench.names(), names);
 }
+
+/// A damaged film gives what it can, says so, and gives the same whatever the number of processors or the luck of threads.
+#[test]
+fn a_damaged_film_is_measured_with_a_warning_and_the_same_every_time() {
+    let bench = Bench::new();
+    let truth = bench.film("whole.mp4", SMALL);
+    let mut bytes = bench.read("whole.mp4");
+    let half = bytes.len() / 2;
+    for at in (half..half + 3000).step_by(500) {
+        bytes[at] ^= 0x55;
+    }
+    bench.write("hurt.mp4", &bytes);
+    let first = bench
+        .run(measure("hurt.mp4", &truth, &["--json"]))
+        .succeeds()
+        .stdout;
+    let result: serde_json::Value = serde_json::from_str(&first).unwrap();
+    let warned = result["warnings"]
+        .as_array()
+        .unwrap()
+        .iter()
+        .any(|warning| warning["key"] == "clip_damaged");
+    assert!(warned, "{}", result["warnings"]);
+    let off = result["period"]["value"].as_f64().unwrap() / truth.law.damped_period_s - 1.0;
+    assert!(off.abs() < 1e-3, "{off}");
+    for _ in 0..4 {
+        assert!(
+            bench
+                .run(measure("hurt.mp4", &truth, &["--json"]))
+                .succeeds()
+                .stdout
+                == first
+        );
+    }
+}
+
+#[test]
+fn files_of_the_users_own_are_not_replaced() {
+    let bench = Bench::new();
+    std::fs::create_dir(bench.path("mine")).unwrap();
+    bench.write("mine/rail-7.mp4", "a film of mine");
+    bench
+        .run(["demo", "--out", "mine"])
+        .fails(2, &["mine", "rail-7.mp4"]);
+    bench.write("holiday.mp4", "another");
+    bench.write("scene.toml", SMALL);
+    bench
+        .run(["rehearse", "scene.toml", "--out", "holiday.mp4"])
+        .fails(2, &["holiday.mp4", "rehearsal"]);
+    assert_eq!(bench.read("mine/rail-7.mp4"), b"a film of mine");
+    assert_eq!(bench.read("holiday.mp4"), b"another");
+}
+
+#[test]
+fn a_name_that_would_steer_a_terminal_stays_on_one_line() {
+    let bench = Bench::new();
+    bench
+        .run(["inspect", "no\nsuch\u{1b}[31m.mp4"])
+        .fails(3, &["no such file"]);
+    bench.run(["refit", "a\nb.csv"]).fails(3, &["no such file"]);
+}

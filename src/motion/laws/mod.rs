@@ -17,9 +17,12 @@ const SIGNIFICANCE: f64 = 0.05;
 /// A law is ruled out by AICc where another one's is lower by more than this: its relative likelihood is then below e⁻⁵ = 0.7 %.
 const AICC_MARGIN: f64 = 10.0;
 
-/// A law is ruled out where its residuals follow one another this closely: what it leaves over is then motion, not noise. Errors of a
-/// compressed film reach 0.3, those of a smoothed sensor 0.6.
+/// A law is ruled out where its residuals follow one another this closely and lie near ω: what it leaves over is then motion of the same
+/// kind, not noise. Errors of a compressed film reach 0.3, those of a smoothed sensor 0.6; a hand that holds the camera reaches 0.9, but
+/// far below ω.
 const STRUCTURED_LAG1: f64 = 0.7;
+/// Variance enlargement near ω, over the readings in a cycle, from which the residuals lie there: a third of them is reached where all do.
+const NEAR_OMEGA_SHARE: f64 = 1.0 / 6.0;
 
 /// The laws tried, the simplest first.
 const LAWS: [Law; 3] = [none::LAW, viscous::LAW, dry::LAW];
@@ -132,7 +135,8 @@ fn judge(
     above_lowest: f64,
     weighted: &Weighted,
 ) -> (bool, String) {
-    let structured = fit.autocorrelation_lag1 > STRUCTURED_LAG1;
+    let structured = fit.autocorrelation_lag1 > STRUCTURED_LAG1
+        && fit.enlargement > NEAR_OMEGA_SHARE * readings_per_cycle(weighted);
     let by_aicc = above_lowest > AICC_MARGIN || structured;
     let verdict = |excluded: bool| {
         if excluded {
@@ -184,6 +188,10 @@ fn judge(
         verdict(by_aicc)
     );
     (by_aicc, reason)
+}
+
+fn readings_per_cycle(weighted: &Weighted) -> f64 {
+    std::f64::consts::TAU / weighted.start.omega_rad_per_s / weighted.readings.interval_s()
 }
 
 /// √(Σ w²r²/Σ w²).
