@@ -5,7 +5,7 @@
 //! *variable* clock keeps its stamps and passes their uncertainty on.
 
 use super::FootageError;
-use super::grid::{Grid, median, round, to_f64};
+use super::grid::{Grid, count, median, round, to_f64};
 use std::path::Path;
 
 /// How even the clock of the stamps is.
@@ -120,6 +120,33 @@ pub fn frame_clock(
     Ok((clock, FrameTimes { t_s, repeated }))
 }
 
+/// Times of a film without stamps whose frames are known to be 1/`rate_hz` apart.
+#[must_use]
+pub fn even_times(n_frames: usize, rate_hz: f64) -> (FrameClock, FrameTimes) {
+    let interval_s = 1.0 / rate_hz;
+    let clock = FrameClock {
+        steady: true,
+        interval_s,
+        tick_s: interval_s,
+        rounding_step_s: interval_s,
+        jitter_rms_s: 0.0,
+        n_dropped: 0,
+        n_repeated: 0,
+        u_t_s: 0.0,
+        time_scale: 1.0,
+    };
+    let t_s = (0..n_frames)
+        .map(|frame| count(frame) * interval_s)
+        .collect();
+    (
+        clock,
+        FrameTimes {
+            t_s,
+            repeated: vec![false; n_frames],
+        },
+    )
+}
+
 /// True for each frame whose stamp does not lie after every stamp before it.
 fn repeated_frames(ticks: &[i64]) -> Vec<bool> {
     let mut latest = None;
@@ -158,7 +185,6 @@ fn long_intervals(ticks: &[i64]) -> usize {
 
 #[cfg(test)]
 mod tests {
-    use super::super::grid::count;
     use super::*;
 
     fn clock_of(ticks: &[i64], time_base: [i64; 2]) -> (FrameClock, FrameTimes) {

@@ -19,7 +19,7 @@ pub use capture_rate::{CaptureRate, capture_rate_from_metadata, time_scale};
 pub use decode::{Footage, Frame, FrameSource, PictureKind};
 pub use error::FootageError;
 pub use facts::{ClipFacts, StreamFacts};
-pub use frame_clock::{FrameClock, FrameTimes, frame_clock};
+pub use frame_clock::{FrameClock, FrameTimes, even_times, frame_clock};
 pub use luma::{GreyPicture, LumaCopy, LumaView};
 pub use open::{Damage, Limits};
 pub use orientation::Orientation;

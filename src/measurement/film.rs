@@ -4,7 +4,7 @@ use super::part::{self, Part};
 use super::{FilmPart, FrameSlip, MeasureError, RecordRow, RowStatus, ScaleFacts, Streak, still};
 use crate::footage::{
     CaptureRate, ClipFacts, Footage, FootageError, FrameClock, FrameTimes, Limits, Orientation,
-    StreamFacts, frame_clock, time_scale, with_patience,
+    StreamFacts, even_times, frame_clock, time_scale, with_patience,
 };
 use crate::number::to_f64;
 use crate::run_sheet::FilmRun;
@@ -191,7 +191,16 @@ impl Film {
             .into());
         }
         let stamps: Vec<Option<i64>> = track.notes.iter().map(|note| note.stamp).collect();
-        let (mut clock, times) = frame_clock(&stamps, facts.time_base, clip)?;
+        let (mut clock, times) = match (
+            frame_clock(&stamps, facts.time_base, clip),
+            run.capture_rate_hz,
+        ) {
+            // A bare stream has no stamps; the user's rate stands for them.
+            (Err(FootageError::NoStamps { .. }), Some(rate_hz)) => {
+                even_times(stamps.len(), rate_hz)
+            }
+            (times, _) => times?,
+        };
         let (stretch, capture_rate) = time_scale(
             1.0 / clock.interval_s,
             run.capture_rate_hz,

@@ -320,3 +320,33 @@ fn frames_lost_behind_even_stamps_are_found_and_do_not_move_the_period() {
         .any(|warning| warning["key"] == "frames_slipped");
     assert!(warned, "a correction must be said");
 }
+
+/// A stream without a container has no stamps; the rate the user gives stands for them.
+#[test]
+fn a_bare_stream_is_measured_at_the_rate_that_is_given() {
+    let bench = Bench::new();
+    let truth = bench.film("small.mp4", SMALL);
+    let done = std::process::Command::new("ffmpeg")
+        .args(["-v", "error", "-i"])
+        .arg(bench.path("small.mp4"))
+        .args(["-c", "copy", "-bsf:v", "h264_mp4toannexb"])
+        .arg(bench.path("bare.h264"))
+        .status();
+    assert!(done.unwrap().success());
+    bench
+        .run(measure("bare.h264", &truth, &[]))
+        .fails(3, &["bare.h264", "--capture-rate"]);
+    bench
+        .run(measure(
+            "bare.h264",
+            &truth,
+            &["--capture-rate", "30", "--quiet"],
+        ))
+        .succeeds();
+    let (off, expanded) = compare(
+        &bench.json("bare.ebbmark/result.json"),
+        "period",
+        truth.law.damped_period_s,
+    );
+    assert!(off.abs() < expanded);
+}
