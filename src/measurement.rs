@@ -2,6 +2,7 @@
 //!
 //! In: a run sheet and the folder its paths start from. Out: a [`Measurement`], plain data that the record room writes down.
 
+mod clip;
 mod energy;
 mod error;
 mod film;
@@ -38,12 +39,12 @@ pub fn measure(
     let run = sheet.film_run()?;
     let bar = ScaleBar::new(run.bar_px, run.length_m, run.u_length_m, run.u_end_px)?;
     let (walked, sha256) = std::thread::scope(|scope| {
-        let sum = scope.spawn(|| film::sha256(clip));
-        let walked = film::walk(clip, &run, progress);
+        let sum = scope.spawn(|| clip::sha256(clip));
+        let walked = clip::walk(clip, &run, progress);
         (walked, sum.join())
     });
     let (track, footage) = walked?;
-    let facts = film::clip_facts(&footage, clip, &track, sha256)?;
+    let facts = clip::clip_facts(&footage, clip, &track, sha256)?;
     let film = film::Film::new(&run, bar, footage.facts(), track, clip)?;
     let mut rows = film.rows(&run)?;
     let part = fit_rows(&mut rows, &run.fit, Some(film.terms()))?;

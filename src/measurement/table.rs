@@ -1,6 +1,6 @@
 //! Reading a table of positions and times: ours, a motion sensor's, anybody's.
 
-use super::{MeasureError, RecordRow, RowStatus, film};
+use super::{MeasureError, RecordRow, RowStatus, clip};
 use std::path::Path;
 
 /// Largest table that is read, bytes: a million rows of a hundred characters.
@@ -43,7 +43,7 @@ pub(super) fn read(table: &Path) -> Result<(Vec<RecordRow>, String, String), Mea
     }
     let bytes = std::fs::read(table).map_err(unreadable)?;
     let rows = rows(&bytes).map_err(failed)?;
-    let sha256 = film::sha256(table).map_err(unreadable)?;
+    let sha256 = clip::sha256(table).map_err(unreadable)?;
     let name = table
         .file_name()
         .map_or_else(String::new, |name| name.to_string_lossy().into_owned());
