@@ -111,7 +111,7 @@ fn png(
         });
     }
     let mut out = Cursor::new(Vec::new());
-    PngEncoder::new_with_quality(&mut out, CompressionType::Best, FilterType::Adaptive)
+    PngEncoder::new_with_quality(&mut out, CompressionType::Default, FilterType::Adaptive)
         .write_image(bytes, columns, rows, colour)
         .map_err(RecordError::compose(part))?;
     Ok(out.into_inner())
