@@ -28,6 +28,8 @@ use std::process::ExitCode;
     name = "ebbmark",
     version,
     arg_required_else_help = true,
+    subcommand_value_name = "VERB",
+    subcommand_help_heading = "Verbs",
     disable_help_subcommand = true
 )]
 struct Arguments {
