@@ -10,8 +10,6 @@ const FEW_CYCLES: f64 = 5.0;
 const MANY_OUTLIERS_SHARE: f64 = 0.01;
 /// Enlargement of the variance beyond which the law, the lens or the clock is more likely at fault than the noise.
 const STRUCTURED_ENLARGEMENT: f64 = 20.0;
-/// Lag-1 autocorrelation from which the same is said: at few frames a cycle the enlargement cannot grow large.
-const STRUCTURED_LAG1: f64 = 0.7;
 /// Share of the sensor's rows a marker may sweep before the order in which they are read shows.
 const ROWS_SWEPT_REL: f64 = 0.05;
 /// Angle between bar and axis beyond which they see the lens and the perspective differently, rad.
@@ -33,8 +31,7 @@ pub(super) fn warnings(measurement: &Measurement, run: &FitRun) -> Vec<Warning> 
     let residual = &fit.residual;
     warn(
         "residuals_structured",
-        residual.variance_enlargement > STRUCTURED_ENLARGEMENT
-            || residual.autocorrelation_lag1 > STRUCTURED_LAG1,
+        residual.variance_enlargement > STRUCTURED_ENLARGEMENT || residual.is_structured(),
         format!(
             "What the fit leaves over is not noise (lag-1 autocorrelation {:.2}, variance near the period {:.0} times that of independent errors; the uncertainties were enlarged for it): the loss may not be viscous, the spring not straight, the camera not still, or the lens may bend the scale.",
             residual.autocorrelation_lag1, residual.variance_enlargement

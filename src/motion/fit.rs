@@ -120,9 +120,6 @@ pub fn fit(records: &[PositionRecord]) -> Result<MotionFit, MotionError> {
     Ok(assemble(records, &majority.belongs, &plain, &spread, laws))
 }
 
-/// Lag-1 autocorrelation of the residuals from which they are the law's miss and not the readings' noise.
-const STRUCTURED_LAG1: f64 = 0.7;
-
 /// RMS of the residuals, m, where they are the law's miss; None where they are noise, or the fit does not settle.
 ///
 /// The readings' own uncertainties then say nothing of how far they lie off, and weights by them would pull the motion towards the slow
@@ -130,7 +127,7 @@ const STRUCTURED_LAG1: f64 = 0.7;
 fn what_the_law_misses(used: &Readings, start: Sinusoid) -> Option<f64> {
     let spread = Plain::new(used, start).ok()?.spread().ok()?;
     let diagnosis = spread.diagnosis;
-    (diagnosis.autocorrelation_lag1 > STRUCTURED_LAG1).then_some(diagnosis.rms_m)
+    diagnosis.is_structured().then_some(diagnosis.rms_m)
 }
 
 fn assemble(

@@ -139,9 +139,6 @@ pub fn quantities(fit: &MotionFit, external: &ExternalTerms) -> MotionQuantities
     }
 }
 
-/// Lag-1 autocorrelation from which the residuals are what the law misses rather than noise.
-const STRUCTURED_LAG1: f64 = 0.7;
-
 /// What the open shutter takes off the amplitude: a marker smeared over a time τ is seen at its mean place, and the amplitude
 /// comes out sin(ωτ/2)/(ωτ/2) ≈ 1 − (ωτ)²/24 times its size.
 ///
@@ -277,7 +274,7 @@ impl Ledger<'_> {
             rows.push(row.assumed(self.external.scale_assumed));
         }
         let residual = &self.fit.residual;
-        if index == 0 && residual.autocorrelation_lag1 > STRUCTURED_LAG1 {
+        if index == 0 && residual.is_structured() {
             // An envelope of another shape misses most at its ends: twice its rms, there the amplitude is read off.
             let source = "what the law misses of the motion";
             let row = BudgetRow::new(key, source, Evaluation::A, residual.rms_m, "m", 2.0);

@@ -7,6 +7,7 @@ mod none;
 mod viscous;
 
 use super::least_squares::LeastSquaresError;
+use super::noise::STRUCTURED_LAG1;
 use super::readings::Readings;
 use super::sinusoid::Sinusoid;
 use crate::stats::f_upper;
@@ -17,11 +18,8 @@ const SIGNIFICANCE: f64 = 0.05;
 /// A law is ruled out by AICc where another one's is lower by more than this: its relative likelihood is then below e⁻⁵ = 0.7 %.
 const AICC_MARGIN: f64 = 10.0;
 
-/// A law is ruled out where its residuals follow one another this closely and lie near ω: what it leaves over is then motion of the same
-/// kind, not noise. Errors of a compressed film reach 0.3, those of a smoothed sensor 0.6; a hand that holds the camera reaches 0.9, but
-/// far below ω.
-const STRUCTURED_LAG1: f64 = 0.7;
-/// Variance enlargement near ω, over the readings in a cycle, from which the residuals lie there: a third of them is reached where all do.
+/// A law is ruled out where its residuals are no noise and lie near ω. This is the variance enlargement there, over the readings in a
+/// cycle, from which they do: a third is reached where all lie there.
 const NEAR_OMEGA_SHARE: f64 = 1.0 / 6.0;
 
 /// The laws tried, the simplest first.
